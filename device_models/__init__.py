@@ -1,0 +1,1 @@
+"""What the silicon does: cells, their variation, noise and faults."""

@@ -1,0 +1,1 @@
+"""Parameter sets, one function per published or demo set, apart from the formulas they feed."""

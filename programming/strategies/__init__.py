@@ -1,0 +1,1 @@
+"""Cell strategies, one file each: given what a controller can know, propose the next pulse or stop."""
