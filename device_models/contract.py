@@ -102,6 +102,8 @@ class DeviceModel:
     bounds(p) -> (lowest, highest) conductance the model can reach [S].
     mean_conductance(before, after, dose, voltage, p) -> time average of the conductance over a pulse [S], for energy;
         None: three-point (Simpson) rule on the trajectory.
+    advance_mixed(state, up, down, p) -> state after doses of both signs, finely interleaved (up, down >= 0); None: small
+        alternating steps.
     set_polarity: sign of the cell voltage that raises the conductance, +1 or -1.
     ohmic: conductance does not depend on voltage.
     """
@@ -119,6 +121,7 @@ class DeviceModel:
     state_of: Callable[..., Any]
     bounds: Callable[..., Any]
     mean_conductance: Callable[..., Any] | None = None
+    advance_mixed: Callable[..., Any] | None = None
     ohmic: bool = True
     sets: Mapping[str, Callable[[], ParameterSet]] = field(default_factory=dict)
     default_set: str = ""

@@ -1,0 +1,31 @@
+"""Has this cell stopped responding? A test on what its readings did, with a stated false-alarm rate.
+
+Only pulses that should have moved the cell count: each pulse adds the dose that all but the slowest allowed share of healthy
+cells would have got. When a cell as slow as that should have moved by twice what reading noise can hide, and the readings
+still look like no movement, it is called stuck. Own method.
+"""
+
+from __future__ import annotations
+
+import math
+
+from programming.slots import advance, conductance, state_of
+
+
+def looks_stuck(plan, nominal, first, reading, evidence):  # type: ignore[no-untyped-def]
+    """True if a cell first read at `first` [S] must have moved by now, and did not.
+
+    evidence: dose of a slow cell so far in this run of pulses (its sign is the direction). nominal: nominal parameters.
+    """
+    if evidence == 0.0:
+        return False
+    variance = first * (plan.noise_linear + plan.noise_square * first) / plan.reads
+    telegraph = plan.telegraph * plan.telegraph * plan.telegraph_high * (1.0 - plan.telegraph_high)
+    variance += telegraph * first * first / plan.reads
+    variance += plan.converter_step * plan.converter_step / 12.0
+    hidden = plan.stuck_limit * math.sqrt(2.0 * max(variance, 0.0)) + plan.converter_step
+    if abs(reading - first) > hidden:
+        return False
+    start = state_of(first, nominal)
+    expected = conductance(advance(start, evidence, nominal), plan.read_voltage, nominal)
+    return abs(expected - conductance(start, plan.read_voltage, nominal)) > 2.0 * hidden

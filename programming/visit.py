@@ -1,0 +1,139 @@
+"""One visit to one cell: settle its stress, then verify, pulse, decide, until the strategy or the loop ends it."""
+
+from __future__ import annotations
+
+import math
+
+import numpy as np
+
+from device_models.random_numbers import CYCLE, normal
+from programming.energy import add_pulse_energy, change_sums
+from programming.half_select import add_own_pulse, find_stress_rates, ledger_totals, mark_settled, settle
+from programming.job import ACCEPTED, GAVE_UP, STUCK
+from programming.plan import OWN_COLUMN, OWN_REST, OWN_ROW, OWN_STATE, STATE, VARIED
+from programming.reading import read_cell
+from programming.slots import advance, decide, rate, record
+from programming.strategy_contract import ACCEPT, GIVE_UP, READ, SET
+from programming.stress_history import close_records, note_pulse
+from programming.stuck_test import looks_stuck
+
+
+def load_parameters(plan, die, cell):  # type: ignore[no-untyped-def]
+    """Parameter record of a cell: its own values where they vary, else the nominal ones."""
+    for place in range(plan.varied.shape[0]):
+        die.values[plan.varied[place]] = die.cells[cell, VARIED + place]
+    return record(die.values)
+
+
+def noisy_dose(plan, die_number, cell, event, dose):  # type: ignore[no-untyped-def]
+    """Dose of one own pulse with its cycle-to-cycle noise."""
+    if plan.cycle_law == 0 or dose == 0.0:
+        return dose
+    z = normal(plan.seed, die_number, cell, CYCLE, event, 0)
+    if plan.cycle_law == 1:
+        return dose * (1.0 + plan.cycle_spread * z)
+    return dose * math.exp(plan.cycle_sigma * z - 0.5 * plan.cycle_sigma * plan.cycle_sigma)
+
+
+def nearest(values, first, end, spacing, wanted):  # type: ignore[no-untyped-def]
+    """Index of the grid value that a wanted magnitude is rounded to; the last value need not lie on the even grid."""
+    if spacing <= 0.0 or not wanted > values[first]:
+        return first
+    if wanted >= values[end - 1]:
+        return end - 1
+    return min(first + int((wanted - values[first]) / spacing + 0.5), end - 1)
+
+
+def give_pulse(plan, die, p, die_number, cell, row, column, direction, index, width_index, bin_):  # type: ignore[no-untyped-def]
+    """One pulse on the selected cell: state, ledgers, energy and time."""
+    amplitude = plan.amplitudes[index]
+    width = plan.widths[width_index]
+    before = die.cells[cell, STATE]
+    after = before
+    dose = 0.0
+    if die.fault[cell] == 0:
+        dose = rate(plan.cell_sign[direction] * amplitude, p) * width
+        dose = noisy_dose(plan, die_number, cell, die.pulses[cell], dose)
+        after = advance(before, dose, p)
+        die.cells[cell, STATE] = after
+    die.pulses[cell] += np.uint32(1)
+    die.row_count[row, bin_] += 1
+    die.column_count[column, bin_] += 1
+    die.all_count[bin_] += 1
+    die.top[direction] = max(die.top[direction], index)
+    add_pulse_energy(plan, die, p, before, after, dose, row, column, direction, amplitude, width)
+    die.total[0] += width + plan.overhead[direction]
+    if plan.history != 0:
+        note_pulse(plan, die, row, column, direction, bin_)
+
+
+def mark_own_pulse(die, cell, totals):  # type: ignore[no-untyped-def]
+    """From here on, what moves the cell is disturbance: note its state and the stress of each class so far."""
+    row_up, row_down, column_up, column_down, rest_up, rest_down, _, _ = totals
+    die.cells[cell, OWN_STATE] = die.cells[cell, STATE]
+    die.cells[cell, OWN_ROW] = row_up + row_down
+    die.cells[cell, OWN_COLUMN] = column_up + column_down
+    die.cells[cell, OWN_REST] = rest_up + rest_down
+
+
+def program_cell(plan, die, rules, p, nominal, die_number, cell, row, column, totals):  # type: ignore[no-untyped-def]
+    """Write-verify on one settled cell. Returns (ledger totals after it, pulses given); sets die.status."""
+    target = die.target[cell]
+    tolerance = max(plan.tolerance_S, plan.tolerance_fraction * target)
+    die.memory[:] = 0.0
+    reading = read_cell(plan, die, p, die_number, cell, row, column) if plan.verifies != 0 else math.nan
+    first = reading
+    evidence = 0.0
+    given = 0
+    spare_reads = 64 * plan.max_pulses
+    status = GAVE_UP
+    while True:
+        action, amplitude, width, _gate = decide(target, tolerance, reading, given, die.memory, rules)
+        if action == ACCEPT:
+            status = ACCEPTED
+            break
+        if action == GIVE_UP or (action == READ and spare_reads == 0) or (action != READ and given >= plan.max_pulses):
+            break
+        if action == READ:
+            spare_reads -= 1
+            reading = read_cell(plan, die, p, die_number, cell, row, column)
+            continue
+        direction = 0 if action == SET else 1
+        a_first, a_end = plan.amplitude_first[direction], plan.amplitude_first[direction + 1]
+        w_first, w_end = plan.width_first[direction], plan.width_first[direction + 1]
+        index = nearest(plan.amplitudes, a_first, a_end, plan.amplitude_spacing[direction], amplitude)
+        width_index = nearest(plan.widths, w_first, w_end, plan.width_spacing[direction], width)
+        bin_ = plan.bin_first[direction] + (index - a_first) * (w_end - w_first) + width_index - w_first
+        give_pulse(plan, die, p, die_number, cell, row, column, direction, index, width_index, bin_)
+        totals = add_own_pulse(plan, die, totals, direction, index, plan.widths[width_index])
+        given += 1
+        if plan.verifies == 0:
+            continue
+        reading = read_cell(plan, die, p, die_number, cell, row, column)
+        slow = plan.slow_dose[bin_]
+        if slow * evidence < 0.0:
+            evidence, first = 0.0, reading
+        evidence += slow
+        if looks_stuck(plan, nominal, first, reading, evidence):
+            status = STUCK
+            break
+    die.status[cell] = status
+    return totals, given
+
+
+def visit(plan, die, rules, nominal, die_number, cell, visit_pass):  # type: ignore[no-untyped-def]
+    """Settle, program and put back one cell."""
+    row, column = cell // plan.columns, cell % plan.columns
+    p = load_parameters(plan, die, cell)
+    die.counter[0] += 1
+    change_sums(plan, die, p, die.cells[cell, STATE], row, column, -1.0)
+    find_stress_rates(plan, die, p)
+    totals = ledger_totals(plan, die, row, column)
+    settle(plan, die, p, die_number, cell, row, column, visit_pass, totals)
+    totals, given = program_cell(plan, die, rules, p, nominal, die_number, cell, row, column, totals)
+    if plan.history != 0:
+        close_records(plan, die, row, column)
+    mark_settled(die, cell, totals)
+    if given > 0:
+        mark_own_pulse(die, cell, totals)
+    change_sums(plan, die, p, die.cells[cell, STATE], row, column, 1.0)
