@@ -1,0 +1,34 @@
+"""The saturating (soft-bound) update of Fusi and Abbott (2007) with round illustrative numbers."""
+
+from __future__ import annotations
+
+from math import log1p
+
+from device_models.contract import ParameterSet, Sourced
+
+_LAW = "law of Fusi & Abbott, Nature Neurosci. 10:485 (2007), from memory"
+_ROUND = "stand-in: round illustrative value"
+# a0 gamma q / (L k T) with a0 = 0.25 nm, gamma = 16, L = 12 nm, 298.15 K
+_HOPPING_SCALE = 1.0 / 12.9739148
+_HOPPING = (
+    "Guan, Yu, Wong, IEEE Electron Device Lett. 33:1405 (2012), from memory: a0 0.25 nm, gamma 16, L 12 nm, 298 K"
+)
+
+
+def fusi2007() -> ParameterSet:
+    """1 to 100 uS; a nominal pulse moves 5 % of the distance left upwards, 8 % downwards."""
+    return ParameterSet(
+        name="fusi2007",
+        title="Saturating update with illustrative numbers: 1 to 100 uS, 5 % up, 8 % down per pulse",
+        values={
+            "G_min": Sourced(1e-6, _ROUND),
+            "G_max": Sourced(100e-6, _ROUND),
+            "set_rate": Sourced(-log1p(-0.05) / 100e-9, f"{_LAW}; 5 % in 100 ns: {_ROUND}"),
+            "reset_rate": Sourced(-log1p(-0.08) / 100e-9, f"{_LAW}; 8 % in 100 ns: {_ROUND}"),
+            "set_voltage": Sourced(1.0, _ROUND),
+            "reset_voltage": Sourced(1.0, _ROUND),
+            "set_scale": Sourced(_HOPPING_SCALE, _HOPPING),
+            "reset_scale": Sourced(_HOPPING_SCALE, _HOPPING),
+        },
+        initial_S=10e-6,
+    )
