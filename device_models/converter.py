@@ -11,18 +11,13 @@ from math import floor
 from device_models.compiled import compiled
 
 
-def step_of(full_scale: float, bits: int) -> float:
-    """One step (LSB) of a converter of `bits` bits, in the unit of its full scale."""
+def lsb(full_scale: float, bits: int) -> float:
+    """One step of a converter of `bits` bits, in the unit of its full scale."""
     return full_scale / (1 << bits)
-
-
-def top_code_of(bits: int) -> int:
-    """The highest code of a converter of `bits` bits."""
-    return (1 << bits) - 1
 
 
 @compiled
 def convert(value: float, step: float, top_code: int) -> float:
-    """What a converter of that step and top code reports for a value; the unit is that of the step. NaN stays NaN."""
+    """What a converter of that step and top code reports for a value; the unit is that of the step."""
     code = floor(min(max(value / step, 0.0), float(top_code)))
     return (code + 0.5) * step

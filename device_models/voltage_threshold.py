@@ -154,7 +154,10 @@ def mean_conductance(before: float, after: float, dose: float, voltage: float, p
 
 @compiled
 def _mean_by_simpson(u: float, travel: float, p: Parameters) -> float:
-    panels = min(8 + ceil(4.0 * abs(travel) * p.window_exponent), 1000)
+    # Panels short against the scale of the window and against that of the conductance at its steep end.
+    ratio = p.R_off / p.R_on
+    steepness = 4.0 * ratio if p.law == LINEAR_RESISTANCE else 4.0 * log(ratio)
+    panels = min(16 + ceil(abs(travel) * (8.0 * p.window_exponent + steepness)), 2000)
     step = 0.5 * travel / panels
     total = 0.0
     left = conductance_at(p.law, u, p.R_on, p.R_off)
