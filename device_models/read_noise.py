@@ -13,10 +13,8 @@ from __future__ import annotations
 from math import exp, expm1, log, tanh
 
 from device_models.compiled import compiled
+from device_models.constants import BOLTZMANN, ELEMENTARY_CHARGE
 from device_models.contract import NoiseLevels
-
-BOLTZMANN = 1.380649e-23  # J/K, exact
-ELEMENTARY_CHARGE = 1.602176634e-19  # C, exact
 
 
 def noise_bandwidth(integration: float) -> float:

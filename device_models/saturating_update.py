@@ -57,8 +57,8 @@ QUANTITIES = {
 @compiled
 def _sinh_ratio(voltage: float, nominal: float, scale: float) -> float:
     # sinh(voltage / scale) / sinh(nominal / scale), both positive, by two exponentials: in less than half the time of
-    # two sinh, without overflow of either; e^700 is as good as infinite for a rate.
-    grown = exp(min((voltage - nominal) / scale, 700.0))
+    # two sinh, without overflow; e^600 is as good as infinite but still a number.
+    grown = exp(min((voltage - nominal) / scale, 600.0))
     tail = exp(-nominal / scale)
     if tail < 1e-100:
         return grown * (1.0 - exp(-2.0 * voltage / scale))
