@@ -192,10 +192,18 @@ def _steps(job: Job) -> Iterator[str]:
         if 0.0 < train.step < job.resolution * (1.0 - 1e-9) and job.strategy.amplitudes == "staircase":
             step = text_of(train.step, "V")
             yield f"[programming] resolution ({resolution}) is coarser than [programming.{name}] step ({step})"
+        if _single_step(job, name):
+            yield f"[programming.{name}]: the staircase of {job.strategy.name} has a single step"
         unused = [key for key in ("step", "stop") if _unused_amplitude(job, name, key)]
         unused += [key for key in ("width_step", "width_stop") if _unused_width(job, name, key)]
         if unused:
             yield f"[programming.{name}] {' and '.join(unused)}: no effect with strategy {job.strategy.name}"
+
+
+def _single_step(job: Job, name: str) -> bool:
+    train = getattr(job, name)
+    flat = train.stop <= train.start if job.strategy.amplitudes == "staircase" else False
+    return flat or (job.strategy.widths == "staircase" and train.width_stop <= train.width)
 
 
 def _unused_amplitude(job: Job, name: str, key: str) -> bool:

@@ -13,6 +13,7 @@ from pydantic import ValidationError
 from benchmarks.classifier import Classifier
 from benchmarks.design_warnings import design_warnings
 from benchmarks.errors import BadInputError
+from benchmarks.plugin_file import blaming_user_code
 from benchmarks.scenario_document import resolved_document, scenario_digest
 from benchmarks.scenario_job import resolve
 from benchmarks.scenario_keys import complaint
@@ -60,13 +61,14 @@ def load_scenario(
     try:
         file = ScenarioFile.model_validate(table)
         resolved = resolve(file, path.parent, allow_code)
-        warnings = design_warnings(resolved.job)
+        plugins = [plugin for plugin in (resolved.device.plugin, resolved.strategy_plugin) if plugin is not None]
+        with blaming_user_code([plugin.path for plugin in plugins]):
+            warnings = design_warnings(resolved.job)
     except ValidationError as error:
         raise BadInputError(f"{path}: {complaint(error)}") from error
     except BadInputError as error:
         raise BadInputError(f"{path}: {error}") from error
     document = resolved_document(resolved, file.dies)
-    plugins = (resolved.device.plugin, resolved.strategy_plugin)
     return Scenario(
         path=path,
         title=file.title or path.stem,
@@ -77,7 +79,7 @@ def load_scenario(
         warnings=warnings,
         document=document,
         digest=scenario_digest(document, resolved),
-        user_code=tuple(plugin.path for plugin in plugins if plugin is not None),
+        user_code=tuple(plugin.path for plugin in plugins),
     )
 
 

@@ -10,7 +10,8 @@ from typing import Any
 
 from benchmarks.errors import BadInputError, closest, listed, shown
 from benchmarks.plain_device import PlainDevice
-from benchmarks.plugin_file import PluginFile, is_plugin_reference, load_plugin
+from benchmarks.plugin_file import PluginFile, blaming_user_code, is_plugin_reference, load_plugin
+from benchmarks.plugin_shape import check_device_shape
 from benchmarks.quantities import QuantityError, parse_quantity, text_of
 from benchmarks.scenario_schema import DeviceSection, SpreadSection
 from device_models.catalog import device_names, load_device
@@ -42,6 +43,11 @@ class ResolvedDevice:
 def resolve_device(section: DeviceSection, folder: Path, allow_code: bool) -> ResolvedDevice:
     """Raises BadInputError, with section and key, for whatever the model does not know or does not allow."""
     model, plugin = _find_model(section.model, folder, allow_code)
+    with blaming_user_code([plugin.path] if plugin else []):
+        return _resolve(section, model, plugin)
+
+
+def _resolve(section: DeviceSection, model: DeviceModel, plugin: PluginFile[DeviceModel] | None) -> ResolvedDevice:
     chosen = _find_set(section, model)
     sources: dict[str, str] = {}
     values = _values(section.overrides, model, chosen, sources)
@@ -68,6 +74,7 @@ def _find_model(name: str, folder: Path, allow_code: bool) -> tuple[DeviceModel,
     if is_plugin_reference(name):
         try:
             plugin = load_plugin(name, folder, DeviceModel, allow_code)
+            check_device_shape(plugin.object)
         except BadInputError as error:
             raise BadInputError(f"[device] model: {error}") from error
         return plugin.object, plugin

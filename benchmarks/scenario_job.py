@@ -8,6 +8,7 @@ from pathlib import Path
 
 from benchmarks.errors import BadInputError, closest, listed, shown
 from benchmarks.plugin_file import PluginFile, is_plugin_reference, load_plugin
+from benchmarks.plugin_shape import check_strategy_shape
 from benchmarks.quantities import text_of
 from benchmarks.scenario_device import ResolvedDevice, resolve_device
 from benchmarks.scenario_schema import PulseSection, ScenarioFile, SchemeFractions, VerifySection
@@ -72,6 +73,7 @@ def _find_strategy(name: str, folder: Path, allow_code: bool) -> tuple[CellStrat
     if is_plugin_reference(name):
         try:
             plugin = load_plugin(name, folder, CellStrategy, allow_code)
+            check_strategy_shape(plugin.object)
         except BadInputError as error:
             raise BadInputError(f"[programming] strategy: {error}") from error
         return plugin.object, plugin

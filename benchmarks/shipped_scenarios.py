@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import tomllib
+from collections.abc import Callable
 from pathlib import Path
 
 from benchmarks.errors import BadInputError, closest, shown
@@ -32,9 +33,9 @@ def find_scenario(reference: str) -> Path:
     is_path = path.suffix == ".toml" or len(path.parts) > 1
     if not is_path and reference in shipped:
         return shipped[reference]
-    if path.is_dir():
+    if _is(path.is_dir):
         raise BadInputError(f"{reference}: is a folder, not a scenario file")
-    if path.exists():
+    if _is(path.exists):
         return path
     if is_path and reference not in shipped:
         raise BadInputError(f"{reference}: there is no such file{closest(reference, _neighbours(path))}")
@@ -42,6 +43,13 @@ def find_scenario(reference: str) -> Path:
         return shipped[reference]
     hint = closest(reference, shipped)
     raise BadInputError(f"{shown(reference)}: neither a file nor a scenario that ships{hint}; see 'pulsewright list'")
+
+
+def _is(question: Callable[[], bool]) -> bool:
+    try:
+        return question()
+    except (OSError, ValueError):  # a name too long for the file system, or with a zero byte
+        return False
 
 
 def _neighbours(path: Path) -> list[str]:
