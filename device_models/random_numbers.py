@@ -54,9 +54,7 @@ def keyed_words(seed, die, cell, purpose, event, draw):  # type: ignore[no-untyp
     """
     key = np.uint64(seed)
     tag = (np.uint64(purpose) << np.uint64(24)) | np.uint64(draw)
-    w0, w1, w2, w3 = philox_block(
-        np.uint64(event), np.uint64(cell), np.uint64(die), tag, key & _LOW_32, key >> _SHIFT_32
-    )
+    w0, w1, w2, w3 = philox_block(np.uint64(event), np.uint64(cell), np.uint64(die), tag, key & _LOW_32, key >> _SHIFT_32)
     return (w1 << _SHIFT_32) | w0, (w3 << _SHIFT_32) | w2
 
 

@@ -50,9 +50,7 @@ def add_pulse_energy(plan, die, p, before, after, dose, row, column, direction, 
     column_current = plan.column_fraction * column_sum
     rest_current = plan.rest_fraction * rest_sum
     die.energy[SELECTED] += square_time * selected
-    die.energy[HALF_SELECTED] += square_time * (
-        plan.row_fraction * row_current + plan.column_fraction * column_current
-    )
+    die.energy[HALF_SELECTED] += square_time * (plan.row_fraction * row_current + plan.column_fraction * column_current)
     die.energy[REST] += square_time * plan.rest_fraction * rest_current
     # currents out of the three rails, per volt of the pulse; the selected bit line is ground
     word_rail = column_current + rest_current

@@ -38,7 +38,7 @@ class Cell:
     cycle: ParameterSpread | None = None
     initial_S: float = 0.0
     initial_spread: float = 0.0
-    noise: NoiseLevels = NoiseLevels()
+    noise: NoiseLevels = field(default_factory=NoiseLevels)
 
 
 @dataclass(frozen=True)
@@ -160,8 +160,8 @@ class DieOutcome:
     sum to 1, or are 0 where there was none).
     energy_J: the six of ENERGY_PARTS [J], for the whole die ("supply" is apart: not part of the dissipated total).
     half_select_error: bound on the relative error of the half-selected and rest energies by debts not yet settled.
-    time_s: time for the whole die, one cell after another [s]. stress_dominates: mixed stress wrecked cells (their
-    half-select dose of both polarities exceeded one time constant of the cell in more than a tenth of the cells).
+    time_s: time for the whole die, one cell after another [s]. stress_dominates: more than a tenth of the addressed cells
+    ended out of their band because of disturbance (it is larger than what their own programming left as error).
     """
 
     die: int

@@ -16,7 +16,7 @@ def read_cell(plan, die, p, die_number, cell, row, column):  # type: ignore[no-u
     """Reading of a cell [S]: noise, converter and average of `reads`; counts the verify, its energy and its time."""
     true = conductance(die.cells[cell, STATE], plan.read_voltage, p)
     deviation = math.sqrt(true * (plan.noise_linear + plan.noise_square * true))
-    event = die.verifies[cell]
+    event = np.int64(die.verifies[cell])
     total = 0.0
     for read in range(plan.reads):
         word, other = keyed_words(plan.seed, die_number, cell, READ, event, read)
@@ -27,7 +27,7 @@ def read_cell(plan, die, p, die_number, cell, row, column):  # type: ignore[no-u
         if plan.converter_step > 0.0:
             reading = convert(reading * plan.converter_gain[column], plan.converter_step, plan.converter_top)
         total += reading
-    die.verifies[cell] = event + np.uint32(1)
+    die.verifies[cell] = np.uint32(event + 1)
     # the word line at the verify voltage, every bit line at virtual ground: the whole row draws current
     row_conductance = die.row_sum[row, 0] + true
     die.energy[VERIFY] += plan.read_voltage * plan.read_voltage * row_conductance * plan.integration * plan.reads

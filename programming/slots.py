@@ -6,14 +6,15 @@ the compiled function of the model or strategy at hand, so that the whole is one
 
 from __future__ import annotations
 
+from dataclasses import dataclass
 from typing import Any
 
 
+@dataclass(frozen=True)
 class Slot:
     """A place in the loop for one function (or record type) of a plug-in."""
 
-    def __init__(self, name: str) -> None:
-        self.name = name
+    name: str
 
     def __call__(self, *arguments: Any) -> Any:
         """Never called: the fused loop holds the plug-in's function here. Raises RuntimeError."""

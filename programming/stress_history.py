@@ -9,6 +9,8 @@ records comes first, interleaved. Own method; checked against the plain loop.
 
 from __future__ import annotations
 
+import numpy as np
+
 from device_models.compiled import compiled
 from programming.plan import STATE
 from programming.slots import advance, advance_mixed
@@ -44,12 +46,8 @@ def close_records(plan, die, row, column):  # type: ignore[no-untyped-def]
     visit = die.counter[0]
     enough = plan.history_step
     for line in (row, plan.rows + column):
-        close_record(
-            die.line_open, die.line_sum, die.line_visit, die.line_dose, die.line_records, line, visit, enough
-        )
-    close_record(
-        die.all_open, die.all_reference, die.all_visit, die.all_dose, die.all_records, 0, visit, enough * 0.25
-    )
+        close_record(die.line_open, die.line_sum, die.line_visit, die.line_dose, die.line_records, line, visit, enough)
+    close_record(die.all_open, die.all_reference, die.all_visit, die.all_dose, die.all_records, 0, visit, enough * 0.25)
 
 
 @compiled
@@ -77,7 +75,7 @@ def own_ratio(total, reference):  # type: ignore[no-untyped-def]
 def replay(plan, die, p, cell, row, column, totals, up, down, noise_up, noise_down):  # type: ignore[no-untyped-def]
     """State of a cell after its unsettled doses `up` and `down`, the recent ones in order."""
     row_up, row_down, column_up, column_down, rest_up, rest_down, _, _ = totals
-    since = die.last_visit[cell]
+    since = np.int64(die.last_visit[cell])
     line = plan.rows + column
     row_n, row_u, row_d, row_lost = recent(die.line_visit, die.line_dose, die.line_records, row, since)
     col_n, col_u, col_d, col_lost = recent(die.line_visit, die.line_dose, die.line_records, line, since)

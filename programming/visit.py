@@ -10,9 +10,9 @@ from device_models.random_numbers import CYCLE, normal
 from programming.energy import add_pulse_energy, change_sums
 from programming.half_select import add_own_pulse, find_stress_rates, ledger_totals, mark_settled, settle
 from programming.job import ACCEPTED, GAVE_UP, STUCK
-from programming.plan import OWN_COLUMN, OWN_REST, OWN_ROW, OWN_STATE, STATE, VARIED
+from programming.plan import DISTURBANCE_S, FINAL_S, OWN_COLUMN, OWN_REST, OWN_ROW, OWN_STATE, STATE, VARIED
 from programming.reading import read_cell
-from programming.slots import advance, decide, rate, record
+from programming.slots import advance, conductance, decide, rate, record
 from programming.strategy_contract import ACCEPT, GIVE_UP, READ, SET
 from programming.stress_history import close_records, note_pulse
 from programming.stuck_test import looks_stuck
@@ -53,7 +53,7 @@ def give_pulse(plan, die, p, die_number, cell, row, column, direction, index, wi
     dose = 0.0
     if die.fault[cell] == 0:
         dose = rate(plan.cell_sign[direction] * amplitude, p) * width
-        dose = noisy_dose(plan, die_number, cell, die.pulses[cell], dose)
+        dose = noisy_dose(plan, die_number, cell, np.int64(die.pulses[cell]), dose)
         after = advance(before, dose, p)
         die.cells[cell, STATE] = after
     die.pulses[cell] += np.uint32(1)
@@ -121,15 +121,38 @@ def program_cell(plan, die, rules, p, nominal, die_number, cell, row, column, to
     return totals, given
 
 
-def visit(plan, die, rules, nominal, die_number, cell, visit_pass):  # type: ignore[no-untyped-def]
-    """Settle, program and put back one cell."""
+def score_cell(plan, die, p, cell, totals):  # type: ignore[no-untyped-def]
+    """Write the results of a settled cell over its record."""
+    row_up, row_down, column_up, column_down, rest_up, rest_down, _, _ = totals
+    final = conductance(die.cells[cell, STATE], plan.read_voltage, p)
+    own = conductance(die.cells[cell, OWN_STATE], plan.read_voltage, p)
+    row_dose = max(row_up + row_down - die.cells[cell, OWN_ROW], 0.0)
+    column_dose = max(column_up + column_down - die.cells[cell, OWN_COLUMN], 0.0)
+    rest_dose = max(rest_up + rest_down - die.cells[cell, OWN_REST], 0.0)
+    dose = row_dose + column_dose + rest_dose
+    share = 1.0 / dose if dose > 0.0 else 0.0
+    die.cells[cell, OWN_ROW] = row_dose * share
+    die.cells[cell, OWN_COLUMN] = column_dose * share
+    die.cells[cell, OWN_REST] = rest_dose * share
+    die.cells[cell, FINAL_S] = final
+    die.cells[cell, DISTURBANCE_S] = final - own
+    tolerance = max(plan.tolerance_S, plan.tolerance_fraction * die.target[cell])
+    die.in_band[cell] = abs(final - die.target[cell]) <= tolerance
+
+
+def visit(plan, die, rules, nominal, die_number, cell, visit_pass, score):  # type: ignore[no-untyped-def]
+    """Settle a cell's stress; then program it, or (score) take down how it ended."""
     row, column = cell // plan.columns, cell % plan.columns
     p = load_parameters(plan, die, cell)
-    die.counter[0] += 1
-    change_sums(plan, die, p, die.cells[cell, STATE], row, column, -1.0)
+    stale = die.cells[cell, STATE]
     find_stress_rates(plan, die, p)
     totals = ledger_totals(plan, die, row, column)
     settle(plan, die, p, die_number, cell, row, column, visit_pass, totals)
+    if score:
+        score_cell(plan, die, p, cell, totals)
+        return
+    die.counter[0] += 1
+    change_sums(plan, die, p, stale, row, column, -1.0)
     totals, given = program_cell(plan, die, rules, p, nominal, die_number, cell, row, column, totals)
     if plan.history != 0:
         close_records(plan, die, row, column)

@@ -1,0 +1,198 @@
+"""Compose a device model, a strategy and the programming loop into one compiled function, cached between processes.
+
+The loop's own functions are plain Python that names slots. Here they are copied with the slots filled and compiled as one.
+What numba caches is a tiny generated module in the user's cache folder, named by a digest of everything the loop reaches
+(programming.code_digest), so a changed device, strategy, helper or constant gets another name and is compiled afresh.
+"""
+
+from __future__ import annotations
+
+import os
+import tempfile
+import threading
+from collections.abc import Callable
+from pathlib import Path
+from types import FunctionType
+from typing import Any, NamedTuple
+
+from numba import njit
+from numba.core.dispatcher import Dispatcher
+
+from device_models.contract import DeviceModel
+from programming import calibration, die_loop, stress_history
+from programming.code_digest import code_digest
+from programming.energy import simpson_conductance
+from programming.slots import Slot
+from programming.strategy_contract import CellStrategy
+
+
+class Fused(NamedTuple):
+    """The compiled functions of one model and one strategy. Each is compiled, or loaded, at its first call.
+
+    program_die(plan, die, rules, die_number): see programming.die_loop. sample_doses, nominal_cell: see
+    programming.calibration.
+    """
+
+    program_die: Callable[..., None]
+    sample_doses: Callable[..., None]
+    nominal_cell: Callable[..., tuple[float, float, float]]
+
+
+CACHE_VARIABLE = "PULSEWRIGHT_CACHE_DIR"
+_ENTRY = '''"""Generated: one model, one strategy and the programming loop, compiled together. Safe to delete."""
+
+
+def program_die(plan, die, rules, die_number):
+    draw_faults(plan, die, die_number)
+    loop(plan, die, rules, die_number)
+
+
+def sample_doses(base_values, varied, law, size, truncation, voltages, widths, out):
+    sample(base_values, varied, law, size, truncation, voltages, widths, out)
+
+
+def nominal_cell(base_values, voltage):
+    return nominal(base_values, voltage)
+'''
+# The loop is inlined into one function, so that records of arrays are taken apart once, not copied at each call; and it
+# is compiled without reference counting (it allocates nothing), which would otherwise be most of its time.
+# Nothing inside is called from Python: no wrappers, which would be a third of the compile time.
+_HELPER_OPTIONS = {
+    "error_model": "numpy",
+    "nogil": True,
+    "_nrt": False,
+    "no_cpython_wrapper": True,
+    "no_cfunc_wrapper": True,
+}
+_LOOP_OPTIONS = {**_HELPER_OPTIONS, "forceinline": True}
+_ENTRY_OPTIONS = {"error_model": "numpy", "nogil": True}
+_draw_faults = njit(**_ENTRY_OPTIONS)(die_loop.draw_faults)
+_fused: dict[str, Fused] = {}
+_lock = threading.Lock()
+
+
+def cache_folder() -> Path:
+    """Where compiled loops are kept: $PULSEWRIGHT_CACHE_DIR, or the user's cache folder."""
+    chosen = os.environ.get(CACHE_VARIABLE)
+    if chosen:
+        return Path(chosen)
+    from platformdirs import user_cache_path
+
+    return user_cache_path("pulsewright")
+
+
+def fuse(model: DeviceModel, strategy: CellStrategy) -> Fused:
+    """The compiled loop for a model and a strategy.
+
+    Raises programming.code_digest.NotDigestibleError if a plug-in reaches something that cannot be part of a cache key.
+    """
+    fillings = slot_fillings(model, strategy)
+    parts = {
+        "loop": die_loop.program_die,
+        "sample": calibration.sample_doses,
+        "nominal": calibration.nominal_cell,
+        "draw_faults": _draw_faults,
+    }
+    options = repr((_ENTRY, sorted(_LOOP_OPTIONS.items()), sorted(_ENTRY_OPTIONS.items())))
+    digest = code_digest({**parts, "options": options, **{f"slot {k}": v for k, v in fillings.items()}})
+    with _lock:
+        if digest not in _fused:
+            _fused[digest] = _compile(digest, fillings)
+        return _fused[digest]
+
+
+def slot_fillings(model: DeviceModel, strategy: CellStrategy) -> dict[str, Any]:
+    """Slot name -> compiled function, defaults included where the model leaves one out."""
+    fillings: dict[str, Any] = {
+        "rate": model.rate,
+        "advance": model.advance,
+        "conductance": model.conductance,
+        "state_of": model.state_of,
+        "bounds": model.bounds,
+        "decide": strategy.decide,
+        "record": _record_maker(model.Parameters),
+    }
+    fillings["advance_mixed"] = model.advance_mixed or fill_slots(stress_history.alternate, fillings)
+    fillings["mean_conductance"] = model.mean_conductance or _simpson(fillings)
+    return fillings
+
+
+def fill_slots(function: FunctionType, fillings: dict[str, Any], options: dict[str, Any] | None = None) -> Any:
+    """A compiled copy of a loop function and of all it calls, with the slots filled.
+
+    Plain functions are parts of the loop, to be inlined. Compiled ones are helpers or a plug-in's: copied too, so that they
+    are compiled with the loop's options.
+    """
+    copies: dict[FunctionType, Any] = {}
+
+    def copy(original: FunctionType, options: dict[str, Any]) -> Any:
+        if original not in copies:
+            names = dict(original.__globals__)
+            for name in original.__code__.co_names:
+                value = names.get(name)
+                if isinstance(value, Slot):
+                    value = fillings[value.name]
+                if isinstance(value, Dispatcher) and value.py_func.__closure__ is None:
+                    names[name] = copy(value.py_func, _HELPER_OPTIONS)
+                elif isinstance(value, FunctionType) and value.__module__.split(".")[0] == "programming":
+                    names[name] = copy(value, _LOOP_OPTIONS)
+                elif name in names:
+                    names[name] = value
+            filled = FunctionType(original.__code__, names, original.__name__, original.__defaults__)
+            copies[original] = njit(**options)(filled)
+        return copies[original]
+
+    return copy(function, options or _LOOP_OPTIONS)
+
+
+def _record_maker(record_type: type[Any]) -> Any:
+    """A compiled function from an array of values to the model's Parameters record."""
+    fields = ", ".join(f"values[{i}]" for i in range(len(record_type._fields)))
+    names: dict[str, Any] = {"Parameters": record_type, "__name__": __name__}
+    exec(f"def record(values):\n    return Parameters({fields})\n", names)
+    return njit(error_model="numpy", nogil=True)(names["record"])
+
+
+def _simpson(fillings: dict[str, Any]) -> Any:
+    """mean_conductance for a model that has none: Simpson's rule over the trajectory of the pulse."""
+    advance = fillings["advance"]
+    rule = fill_slots(simpson_conductance, fillings)
+
+    def mean_conductance(before, after, dose, voltage, p):  # type: ignore[no-untyped-def]
+        return rule(before, advance(before, 0.5 * dose, p), after, voltage, p)
+
+    return njit(error_model="numpy", nogil=True)(mean_conductance)
+
+
+def _compile(digest: str, fillings: dict[str, Any]) -> Fused:
+    """Put the generated module in the cache folder and hand its functions to numba with its cache on."""
+    path = _entry_file(digest)
+    # numba looks the module up by name when it loads the compiled code: it must be one that can be imported
+    names: dict[str, Any] = {
+        "loop": fill_slots(die_loop.program_die, fillings),
+        "sample": fill_slots(calibration.sample_doses, fillings, _ENTRY_OPTIONS),
+        "nominal": fill_slots(calibration.nominal_cell, fillings, _ENTRY_OPTIONS),
+        "draw_faults": _draw_faults,
+        "__name__": __name__,
+    }
+    exec(compile(_ENTRY, str(path), "exec"), names)
+    return Fused(*(njit(**_ENTRY_OPTIONS, cache=True)(names[name]) for name in Fused._fields))
+
+
+def _entry_file(digest: str) -> Path:
+    """The generated module's file, written whole or not at all; a private temporary folder if the cache is read-only."""
+    try:
+        folder = cache_folder()
+        folder.mkdir(parents=True, exist_ok=True)
+        return _write_once(folder / f"loop_{digest[:40]}.py")
+    except OSError:
+        return _write_once(Path(tempfile.mkdtemp(prefix="pulsewright-")) / f"loop_{digest[:40]}.py")
+
+
+def _write_once(path: Path) -> Path:
+    if not path.exists():
+        handle, temporary = tempfile.mkstemp(dir=path.parent, suffix=".tmp")
+        with os.fdopen(handle, "w") as file:
+            file.write(_ENTRY)
+        os.replace(temporary, path)
+    return path

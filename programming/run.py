@@ -1,0 +1,82 @@
+"""Run a job: dies in parallel on threads (the compiled loop releases the GIL), their results handed on in die order."""
+
+from __future__ import annotations
+
+import threading
+from collections import deque
+from collections.abc import Callable, Iterator
+from concurrent.futures import Future, ThreadPoolExecutor
+from typing import TypeVar
+
+import numpy as np
+
+from programming.fuse import fuse
+from programming.job import ENERGY_PARTS, NOT_ADDRESSED, STUCK, DieOutcome, Job
+from programming.orders import ORDERS
+from programming.plan import DISTURBANCE_S, FINAL_S, OWN_REST, OWN_ROW, Die
+from programming.prepare import clear_die, make_die, make_plan, make_rules
+
+T = TypeVar("T")
+
+
+def program_dies(job: Job, dies: int, workers: int, reduce: Callable[[DieOutcome], T]) -> Iterator[T]:
+    """Simulate `dies` dies and yield reduce(outcome) in die order; the same values for any number of workers.
+
+    `reduce` runs in the worker, on arrays that are overwritten by the worker's next die: it must copy what it keeps. At
+    most two dies per worker are in flight. An exception in `reduce`, KeyboardInterrupt included, stops all workers early.
+    """
+    loop = fuse(job.cell.model, job.strategy).program_die
+    plan, rules = make_plan(job), make_rules(job)
+    stop = np.zeros(1, dtype=np.uint8)
+    own = threading.local()
+    same_order = job.order != "random"
+    order = ORDERS[job.order](job.rows, job.columns, job.seed, 0)
+
+    def simulate(die_number: int) -> T:
+        if not hasattr(own, "die"):
+            own.die = make_die(job, plan, order.copy(), stop)
+        if not same_order:
+            own.die.order[:] = ORDERS[job.order](job.rows, job.columns, job.seed, die_number)
+        clear_die(own.die, plan)
+        loop(plan, own.die, rules, die_number)
+        return reduce(_outcome(own.die, die_number))
+
+    pool = ThreadPoolExecutor(max_workers=workers, thread_name_prefix="die")
+    try:
+        waiting: deque[Future[T]] = deque()
+        for die_number in range(dies):
+            waiting.append(pool.submit(simulate, die_number))
+            if len(waiting) >= 2 * workers:
+                yield waiting.popleft().result()
+        while waiting:
+            yield waiting.popleft().result()
+    finally:
+        stop[0] = 1
+        pool.shutdown(wait=True, cancel_futures=True)
+
+
+def _outcome(die: Die, die_number: int) -> DieOutcome:
+    """The results of a finished die as views into the worker's memory."""
+    addressed = die.status != NOT_ADDRESSED
+    disturbance = die.cells[:, DISTURBANCE_S]
+    final = die.cells[:, FINAL_S]
+    moved_out = (np.abs(disturbance) > np.abs(final - disturbance - die.target)) & addressed & (die.status != STUCK)
+    moved_out &= ~die.in_band
+    stored = float(final.sum())
+    assert len(ENERGY_PARTS) == die.energy.size
+    return DieOutcome(
+        die=die_number,
+        target_S=die.target,
+        final_S=final,
+        disturbance_S=disturbance,
+        pulses=die.pulses,
+        verifies=die.verifies,
+        status=die.status,
+        fault=die.fault,
+        in_band=die.in_band,
+        dose_share=die.cells[:, OWN_ROW : OWN_REST + 1],
+        energy_J=die.energy,
+        half_select_error=float(die.total[1]) / stored if stored > 0.0 else 0.0,
+        time_s=float(die.total[0]),
+        stress_dominates=bool(moved_out.sum() > 0.1 * addressed.sum()),
+    )
