@@ -10,6 +10,7 @@ from __future__ import annotations
 from collections.abc import Iterator
 from dataclasses import dataclass
 from functools import cached_property
+from statistics import NormalDist
 from typing import Any
 
 import numpy as np
@@ -18,10 +19,10 @@ from benchmarks.plain_device import PlainDevice
 from benchmarks.quantities import text_of
 from benchmarks.scenario_device import spread_factor
 from programming.job import Job
-from programming.prepare import reading_deviation, sample_cells
+from programming.prepare import reading_deviation
 from programming.pulse_grid import amplitude_grid, width_grid
 
-SAMPLED_CELLS = 2048
+SAMPLED_CELLS, SAMPLE_SEED = 2048, 1
 # Common practice, no source: half-select stress may take a quarter of the verify band.
 SHARE_OF_BAND = 0.25
 DIRECTIONS = {"set": 1.0, "reset": -1.0}
@@ -67,7 +68,18 @@ class _Cells:
 
     @cached_property
     def sample(self) -> list[Any]:
-        return sample_cells(self.job, SAMPLED_CELLS) if self.job.cell.spreads else []
+        cell = self.job.cell
+        if not cell.spreads:
+            return []
+        uniform = np.random.default_rng(SAMPLE_SEED).uniform
+        normal = NormalDist()
+        low, high = normal.cdf(-cell.truncation), normal.cdf(cell.truncation)
+        values = {name: np.full(SAMPLED_CELLS, cell.values[name]) for name in cell.values}
+        for name, spread in cell.spreads.items():
+            deviations = [normal.inv_cdf(share) for share in uniform(low, high, SAMPLED_CELLS)]
+            values[name] *= [spread_factor(spread, deviation) for deviation in deviations]
+        rows = np.column_stack(list(values.values())).tolist()
+        return [self.device.parameters(dict(zip(values, row, strict=True))) for row in rows]
 
     def moves(self, voltage: float) -> bool:
         """Whether the nominal cell moves at this cell voltage [V]."""
