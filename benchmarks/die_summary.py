@@ -9,7 +9,8 @@ import numpy as np
 import numpy.typing as npt
 
 from benchmarks.error_scale import LEVEL_SPAN, ErrorScale
-from programming.job import HEALTHY, STATUS_NAMES, STUCK, DieOutcome, Job
+from device_models.faults import HEALTHY
+from programming.job import STATUS_NAMES, STUCK, DieOutcome, Job
 
 Floats = npt.NDArray[np.float64]
 Counts = npt.NDArray[np.int64]
@@ -20,7 +21,7 @@ SAMPLED_PER_DIE = 4096  # most points a die offers for the scatter of final agai
 
 @dataclass(frozen=True)
 class ErrorTotals:
-    """Final error over a set of cells: their number, its sum [S], sum of squares [S^2], largest size [S]; cells in band."""
+    """Final error over a set of cells: number, sum [S], sum of squares [S^2], largest size [S], number in band."""
 
     cells: int
     sum: float
@@ -31,7 +32,7 @@ class ErrorTotals:
 
 @dataclass(frozen=True)
 class LevelTotals:
-    """The same per level, arrays of length levels; histogram (levels, bins) counts errors in half widths of the band."""
+    """The same per level, arrays of length levels; histogram (levels, bins): errors in half widths of the band."""
 
     cells: Counts
     sum: Floats
@@ -88,6 +89,8 @@ class DieSummary:
 class DieSummariser:
     """Callable DieOutcome -> DieSummary for one job; what depends on the job alone is prepared once.
 
+    The summary owns its memory: the arrays of the outcome may be overwritten by the next die.
+
     score: function of the final conductances (rows, columns) [S], for instance the accuracy of a classifier.
     Raises ValueError for an outcome that is not finite or that addresses no cell.
     """
@@ -121,7 +124,7 @@ class DieSummariser:
             error_histogram=self._histogram(scaled),
             sample=np.column_stack((target[::stride], final[::stride], ~healthy[::stride])),
             disturbance=_disturbance_totals(outcome),
-            energy_J=outcome.energy_J,
+            energy_J=outcome.energy_J.copy(),
             half_select_error=outcome.half_select_error,
             time_s=outcome.time_s,
             stress_dominates=outcome.stress_dominates,
@@ -132,9 +135,7 @@ class DieSummariser:
         span = self._scale.span
         return np.bincount(ErrorScale.bin_of(scaled, span), minlength=ErrorScale.bins(span))
 
-    def _level_totals(
-        self, target: Floats, error: Floats, scaled: Floats, in_band: npt.NDArray[np.bool_]
-    ) -> LevelTotals:
+    def _level_totals(self, target: Floats, error: Floats, scaled: Floats, in_band: npt.NDArray[np.bool_]) -> LevelTotals:
         level, levels = self._scale.level_of(target), self._scale.levels_S.size
         bins = ErrorScale.bins(LEVEL_SPAN)
         flat = np.bincount(level * bins + ErrorScale.bin_of(scaled, LEVEL_SPAN), minlength=levels * bins)
@@ -192,7 +193,7 @@ def _error_totals(error: Floats, in_band: npt.NDArray[np.bool_]) -> ErrorTotals:
 
 
 def _disturbance_totals(outcome: DieOutcome) -> DisturbanceTotals:
-    signed = outcome.disturbance_S
+    signed = outcome.disturbance_S.copy()
     square = signed * signed
     return DisturbanceTotals(
         signed_S=signed,

@@ -32,12 +32,12 @@ class Prefixed:
         return f"{self.number(value)} {self.unit}".rstrip()
 
 
-def prefix_exponent(value: float) -> int:
+def prefix_exponent(value: float, digits: int = _DIGITS) -> int:
     """Exponent of the SI prefix that puts a value between 1 and 1000 (of the nearest prefix there is)."""
     if value == 0.0 or not math.isfinite(value):
         return 0
     # The text is rounded first: 999.99 uS is shown as 1.000 mS.
-    exponent = 3 * math.floor(math.log10(float(f"{abs(value):.{_DIGITS - 1}e}")) / 3)
+    exponent = 3 * math.floor(math.log10(float(f"{abs(value):.{digits - 1}e}")) / 3)
     return int(min(max(exponent, _SMALLEST), _SMALLEST + 3 * (len(_PREFIXES) - 1)))
 
 
@@ -66,13 +66,20 @@ def _decimals(value: float, interval: Sequence[float] | None, exponent: int) -> 
     half = 0.5 * (interval[1] - interval[0]) if interval is not None else 0.0
     if half > 0.0:
         digits = 1 - math.floor(math.log10(half / 10.0**exponent))
-    elif value != 0.0:
-        digits = _DIGITS - 1 - math.floor(math.log10(abs(value) / 10.0**exponent))
     else:
-        digits = 0
+        digits = _significant(value, exponent, _DIGITS)
     return min(max(digits, 0), 6)
 
 
-def engineering(value: float, unit: str) -> str:
-    """A value with its unit, to four significant digits: engineering(1.2346e-8, "S") is "12.35 nS"."""
-    return unit_for(value, unit).text(value)
+def _significant(value: float, exponent: int, digits: int) -> int:
+    """Decimals that show so many significant digits of a value in units of 10**exponent, at most 6."""
+    if value == 0.0:
+        return 0
+    rounded = float(f"{abs(value):.{digits - 1}e}")
+    return min(max(digits - 1 - math.floor(math.log10(rounded / 10.0**exponent)), 0), 6)
+
+
+def engineering(value: float, unit: str, digits: int = _DIGITS) -> str:
+    """A value with its unit, to that many significant digits: engineering(1.2346e-8, "S") is "12.35 nS"."""
+    exponent = prefix_exponent(value, digits)
+    return Prefixed(exponent, _significant(value, exponent, digits), prefixed(exponent, unit)).text(value)

@@ -49,7 +49,7 @@ class ErrorScale:
         return np.searchsorted(middles, target_S)
 
     def scaled(self, error_S: Floats, target_S: Floats) -> Floats:
-        """Errors in half widths of the band; infinite or 0 where the band has no width (a fraction of a target of zero)."""
+        """Errors in half widths of the band; infinite or 0 where it has no width (a fraction of a target of zero)."""
         half = np.maximum(self.half_width(target_S), np.finfo(np.float64).tiny)
         with np.errstate(over="ignore"):
             return error_S / half

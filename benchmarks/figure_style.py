@@ -6,8 +6,9 @@ neighbours also differ in lightness; maps use cividis (Nunez, Anderton & Renslow
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 from contextlib import contextmanager
+from dataclasses import dataclass
 from pathlib import Path
 from threading import Lock
 from typing import TYPE_CHECKING, Any, cast
@@ -17,6 +18,7 @@ from benchmarks.engineering import prefixed
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
     from matplotlib.figure import Figure
+    from matplotlib.gridspec import SubplotSpec
 
 BLACK, GREY, LIGHT, PALE = "#1a1a1a", "#6e6e6e", "#c4c4c4", "#ececec"
 BLUE, SKY, GREEN, ORANGE, VERMILLION = "#0072b2", "#56b4e9", "#009e73", "#e69f00", "#d55e00"
@@ -77,18 +79,50 @@ def house_style() -> Iterator[None]:
         yield
 
 
-def new_figure(size: tuple[float, float]) -> Figure:
+@dataclass(frozen=True)
+class Place:
+    """A part of a figure in which something is drawn: axes, or further parts."""
+
+    figure: Figure
+    spot: SubplotSpec
+
+    def axes(self, **shared: Any) -> Axes:
+        """New axes that fill the place; sharex and sharey as matplotlib has them."""
+        axes: Axes = self.figure.add_subplot(self.spot, **shared)
+        return axes
+
+    def grid(self, heights: Sequence[float], widths: Sequence[float]) -> list[list[Place]]:
+        """Places in rows and columns of these relative sizes."""
+        grid = self.spot.subgridspec(len(heights), len(widths), height_ratios=heights, width_ratios=widths)
+        return [[Place(self.figure, grid[i, j]) for j in range(len(widths))] for i in range(len(heights))]
+
+    def rows(self, *heights: float) -> list[Place]:
+        """Places one below the other."""
+        return [row[0] for row in self.grid(heights, (1.0,))]
+
+    def columns(self, *widths: float) -> list[Place]:
+        """Places side by side."""
+        return self.grid((1.0,), widths)[0]
+
+
+def new_figure(size: tuple[float, float]) -> Place:
     """An empty figure of that width and height [inch]; call it within house_style()."""
     from matplotlib.figure import Figure
 
-    return Figure(figsize=size, layout="constrained")
+    figure = Figure(figsize=size, layout="constrained")
+    return Place(figure, figure.add_gridspec(1, 1)[0])
 
 
 def save(figure: Figure, stem: Path) -> list[Path]:
     """Write stem.png and stem.svg, without dates; call it within house_style(). Returns the two paths."""
     png, svg = stem.with_suffix(".png"), stem.with_suffix(".svg")
+    figure.draw_without_rendering()
+    figure.set_layout_engine("none")
+    for axes in figure.axes:
+        # The last digits of the layout depend on where objects lie in memory.
+        left, bottom, width, height = (round(edge, 6) for edge in axes.get_position().bounds)
+        axes.set_position((left, bottom, width, height))
     figure.savefig(png, dpi=DOTS_PER_INCH, metadata={"Software": None})
-    figure.set_layout_engine("none")  # laid out once is enough
     figure.savefig(svg, dpi=DOTS_PER_INCH, metadata={"Date": None, "Creator": None})
     return [png, svg]
 

@@ -70,9 +70,7 @@ class ReportWriter:
             write(folder, tally, result)
         self._finished = True
 
-    def __exit__(
-        self, kind: type[BaseException] | None, _value: BaseException | None, _trace: TracebackType | None
-    ) -> None:
+    def __exit__(self, kind: type[BaseException] | None, _value: BaseException | None, _trace: TracebackType | None) -> None:
         """Move the report into place if it is finished and nothing went wrong; remove the hidden folder in any case."""
         try:
             with suppress(OSError):  # what is left in its buffer may not fit on a full disk

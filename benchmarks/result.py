@@ -46,6 +46,7 @@ from benchmarks.statistics import (
     score_interval,
 )
 from benchmarks.tally import ErrorTally, Tally
+from benchmarks.version import version
 from programming.job import ACCEPTED, ENERGY_PARTS, GAVE_UP, STUCK
 
 SCHEMA = "pulsewright.result/1"
@@ -134,7 +135,7 @@ def result_object(tally: Tally, scenario: ScenarioLike) -> dict[str, Any]:
             "reference": scenario.score.reference,
         }
     result["warnings"] = [*scenario.warnings, *_warnings(tally)]
-    result["provenance"] = {"version": _version(), "sources": dict(scenario.sources)}
+    result["provenance"] = {"version": version(), "sources": dict(scenario.sources)}
     return result
 
 
@@ -227,11 +228,7 @@ def _energy(tally: Tally) -> dict[str, Any]:
 def _warnings(tally: Tally) -> list[str]:
     warnings = []
     if tally.stress_dominates:
-        dies = (
-            "on every die"
-            if tally.stress_dominates == tally.dies
-            else f"on {tally.stress_dominates} of {tally.dies} dies"
-        )
+        dies = "on every die" if tally.stress_dominates == tally.dies else f"on {tally.stress_dominates} of {tally.dies} dies"
         warnings.append(
             f"disturbance dominates {dies}: pulses meant for other cells pushed more than a tenth of the cells out of "
             "their band; where stress of both polarities mixes, the numbers are then good to a few per cent only"
@@ -250,12 +247,3 @@ def _root(square: float | None) -> float | None:
 
 def _listed(interval: Interval | None) -> list[float] | None:
     return None if interval is None else list(interval)
-
-
-def _version() -> str:
-    from importlib.metadata import PackageNotFoundError, version
-
-    try:
-        return version("pulsewright")
-    except PackageNotFoundError:  # run from a folder that was never installed
-        return "not installed"

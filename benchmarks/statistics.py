@@ -112,7 +112,8 @@ def wilson_interval(fraction: float, trials: float, quantile: float) -> Interval
     spread = quantile * quantile / trials
     centre = (fraction + 0.5 * spread) / (1.0 + spread)
     half = math.sqrt(fraction * (1.0 - fraction) * spread + 0.25 * spread * spread) / (1.0 + spread)
-    return max(0.0, centre - half), min(1.0, centre + half)
+    # The fraction itself always lies within; rounding must not put it a hair outside.
+    return max(0.0, min(fraction, centre - half)), min(1.0, max(fraction, centre + half))
 
 
 def fraction_interval(estimate: RatioEstimate, variance_floor: float | None = None) -> Interval | None:

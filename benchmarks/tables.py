@@ -76,9 +76,7 @@ def level_table(result: Mapping[str, Any]) -> Table:
         rows.append([level["target_S"], level["cells"], error["rms_S"], *limits[:2], error["mean_S"],
                      band["fraction"], *limits[2:]])  # fmt: skip
         errors = ["" if value is None else error_unit.number(value) for value in (error["rms_S"], error["mean_S"])]
-        text.append(
-            [target_unit.number(level["target_S"]), str(level["cells"]), *errors, _percent(band["fraction"], 2)]
-        )
+        text.append([target_unit.number(level["target_S"]), str(level["cells"]), *errors, _percent(band["fraction"], 2)])
     header = ("target_S", "cells", "rms_error_S", "rms_ci95_low_S", "rms_ci95_high_S", "mean_error_S", "in_band",
               "in_band_ci95_low", "in_band_ci95_high")  # fmt: skip
     errors = [f"{name} error ({error_unit.unit})" for name in ("rms", "mean")]

@@ -25,9 +25,7 @@ def print_summary(result: Mapping[str, Any], console: Console) -> None:
     console.print()
     console.print(Text(result["title"], style="bold"))
     console.print(
-        Text(
-            f"{_count(result['cells']['addressed'])} cells programmed on {dies} {'die' if dies == 1 else 'dies'}", "dim"
-        )
+        Text(f"{_count(result['cells']['addressed'])} cells programmed on {dies} {'die' if dies == 1 else 'dies'}", "dim")
     )
     for block in (
         _quantities(result, console),
@@ -57,9 +55,7 @@ def _quantities(result: Mapping[str, Any], console: Console) -> Table:
     notes = _notes(result)
     for quantity in headline(result):
         value, interval = quantity.value, quantity.interval
-        name, note = (
-            ("  without stuck cells", "") if quantity.healthy else (quantity.name, notes.get(quantity.name, ""))
-        )
+        name, note = ("  without stuck cells", "") if quantity.healthy else (quantity.name, notes.get(quantity.name, ""))
         if value is None:
             table.add_row(name, "none", "", "", note)
             continue
@@ -91,9 +87,7 @@ def _disturbance_split(disturbance: Mapping[str, Any]) -> Table:
     table = Table(box=None, padding=(0, 2, 0, 0), show_header=False, pad_edge=False)
     table.add_column(min_width=21)
     shown = unit_for(disturbance["rms"], "S", disturbance["ci95"])
-    parts = [
-        f"{name.replace('_', ' ')} {shown.text(disturbance[name])}" for name in ("same_row", "same_column", "rest")
-    ]
+    parts = [f"{name.replace('_', ' ')} {shown.text(disturbance[name])}" for name in ("same_row", "same_column", "rest")]
     table.add_row("Disturbance by class", ",  ".join(parts))
     return table
 
@@ -112,8 +106,12 @@ def _energy_split(result: Mapping[str, Any], console: Console) -> Table:
     for index, part in enumerate(_PARTS):
         share = energy[part] / energy["per_cell"] if energy["per_cell"] else 0.0
         name = ("Energy: " if index == 0 else "        ") + part.replace("_", "-")
-        shown = unit_for(energy["per_cell"], "J", energy["ci95"]).text(energy[part])
-        table.add_row(name, shown, f"{100 * share:.1f} %", Text(mark * round(_BAR * share), style="cyan"))
+        table.add_row(
+            name,
+            engineering(energy[part], "J", 3),
+            f"{100 * share:.1f} %",
+            Text(mark * round(_BAR * share), style="cyan"),
+        )
     return table
 
 

@@ -12,15 +12,13 @@ from dataclasses import dataclass, field, replace
 import numpy as np
 
 from device_models.contract import DeviceModel
+from device_models.faults import HEALTHY, STUCK_HIGH, STUCK_LOW
 from programming.bias import SCHEMES
 from programming.job import (
     ACCEPTED,
     GAVE_UP,
-    HEALTHY,
     NOT_ADDRESSED,
     STUCK,
-    STUCK_HIGH,
-    STUCK_LOW,
     Cell,
     DieOutcome,
     Faults,
@@ -80,9 +78,7 @@ def _targets(job: Job, rng: np.random.Generator) -> np.ndarray:
     return rng.choice(job.targets.levels_S, cells)
 
 
-def _status(
-    pulses: np.ndarray, fault: np.ndarray, target: np.ndarray, job: Job, rng: np.random.Generator
-) -> np.ndarray:
+def _status(pulses: np.ndarray, fault: np.ndarray, target: np.ndarray, job: Job, rng: np.random.Generator) -> np.ndarray:
     status = np.full(fault.size, ACCEPTED, dtype=np.uint8)
     status[pulses >= job.max_pulses] = GAVE_UP
     status[(fault != HEALTHY) & (rng.random(fault.size) < 0.97)] = STUCK

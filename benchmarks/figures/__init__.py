@@ -10,7 +10,7 @@ from typing import Any
 from benchmarks.figure_style import house_style, new_figure, save
 from benchmarks.tally import Tally
 
-# File name -> module with SIZE (width, height in inches) and draw(figure, tally, result).
+# File name -> module with SIZE (width, height in inches) and draw(place, tally, result).
 FIGURES = {
     "final_conductance": "benchmarks.figures.final_conductance",
     "error_histogram": "benchmarks.figures.error_histogram",
@@ -28,7 +28,7 @@ def write_figures(folder: Path, tally: Tally, result: Mapping[str, Any]) -> list
         for name, module_name in FIGURES.items():
             module = import_module(module_name)
             draw: Callable[..., None] = module.draw
-            figure = new_figure(module.SIZE)
-            draw(figure, tally, result)
-            paths += save(figure, folder / name)
+            place = new_figure(module.SIZE)
+            draw(place, tally, result)
+            paths += save(place.figure, folder / name)
     return paths

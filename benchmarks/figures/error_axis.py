@@ -44,9 +44,7 @@ def merged_bins(histogram: npt.NDArray[np.int64], reach: int) -> tuple[npt.NDArr
     inner = histogram[..., middle - far : middle + far]
     typical = inner.sum(axis=-1).mean()
     merged = 2
-    while merged < BINS_PER_HALF_WIDTH and (
-        2 * far > _MOST_BINS * merged or typical * merged < 2 * far * _CELLS_PER_BIN
-    ):
+    while merged < BINS_PER_HALF_WIDTH and (2 * far > _MOST_BINS * merged or typical * merged < 2 * far * _CELLS_PER_BIN):
         merged *= 2
     counts = inner.reshape(*inner.shape[:-1], -1, merged).sum(axis=-1)
     return np.linspace(-reach, reach, counts.shape[-1] + 1), counts

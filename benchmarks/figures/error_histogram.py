@@ -8,20 +8,19 @@ from typing import TYPE_CHECKING, Any
 import numpy as np
 
 from benchmarks.error_scale import BINS_PER_HALF_WIDTH
-from benchmarks.figure_style import BLUE, COLUMN, GREY, ORANGE, PALE, VERMILLION
+from benchmarks.figure_style import BLUE, COLUMN, GREY, ORANGE, PALE, VERMILLION, Place
 from benchmarks.figures.error_axis import central_span, error_axis, merged_bins
 from benchmarks.tally import Tally
 
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
-    from matplotlib.figure import FigureBase
 
 SIZE = (COLUMN, 2.5)
 
 
-def draw(figure: FigureBase, tally: Tally, result: Mapping[str, Any]) -> None:
+def draw(place: Place, tally: Tally, result: Mapping[str, Any]) -> None:
     """Draw the histogram, in per cent of all addressed cells per bin."""
-    axes = figure.subplots()
+    axes = place.axes()
     axis = error_axis(tally.scale)
     reach = central_span(tally.error_histogram, tally.scale.span)
     edges, counts = merged_bins(tally.error_histogram, reach)
@@ -30,15 +29,7 @@ def draw(figure: FigureBase, tally: Tally, result: Mapping[str, Any]) -> None:
     width = float(edges[1] - edges[0]) * axis.unit
     axes.axvspan(-axis.unit, axis.unit, color=PALE, linewidth=0, zorder=0)
     for chosen, colour in ((inside, BLUE), (~inside, ORANGE)):
-        axes.bar(
-            left[chosen] * axis.unit,
-            share[chosen],
-            width,
-            align="edge",
-            color=colour,
-            edgecolor="white",
-            linewidth=0.25,
-        )
+        axes.stairs(np.where(chosen, share, 0.0), edges * axis.unit, fill=True, color=colour, linewidth=0)
     axes.set_xlim(-reach * axis.unit, reach * axis.unit)
     axes.set_ylim(0.0, 1.06 * float(share.max()) or 1.0)
     axes.set_xlabel(axis.label)
@@ -60,6 +51,4 @@ def _label_sides(axes: Axes, tally: Tally, reach: int) -> None:
         outside = percent * np.sum(half[BINS_PER_HALF_WIDTH:])
         beyond = percent * np.sum(half[reach * BINS_PER_HALF_WIDTH :])
         axes.text(place, 1.10, f"{outside:.2f} % {name}", color=VERMILLION, ha=side, transform=axes.transAxes)
-        axes.text(
-            place, 1.03, f"{beyond:.2f} % beyond axis", color=GREY, ha=side, fontsize=6.5, transform=axes.transAxes
-        )
+        axes.text(place, 1.03, f"{beyond:.2f} % beyond axis", color=GREY, ha=side, fontsize=6.5, transform=axes.transAxes)

@@ -10,21 +10,23 @@ import numpy.typing as npt
 
 from benchmarks.engineering import prefix_exponent
 from benchmarks.error_scale import LEVEL_SPAN
-from benchmarks.figure_style import BLACK, BLUE, COLUMN, GREY, LIGHT, PALE, VERMILLION, unit_text
+from benchmarks.figure_style import BLACK, BLUE, COLUMN, GREY, LIGHT, PALE, VERMILLION, Place, unit_text
 from benchmarks.figures.error_axis import central_span, error_axis, merged_bins
 from benchmarks.tally import Tally
 
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
-    from matplotlib.figure import FigureBase
 
 SIZE = (COLUMN, 4.2)
 _GOLDEN = 0.6180339887498949  # multiples of it, modulo 1, fill an interval evenly
 
 
-def draw(figure: FigureBase, tally: Tally, _result: Mapping[str, Any]) -> None:
+def draw(place: Place, tally: Tally, _result: Mapping[str, Any]) -> None:
     """Draw both panels."""
-    upper, lower = figure.subplots(2, 1, sharex=True, height_ratios=(1.7, 1.0))
+    above, below = place.rows(1.7, 1.0)
+    upper = above.axes()
+    lower = below.axes(sharex=upper)
+    upper.tick_params(labelbottom=False)
     exponent = prefix_exponent(float(tally.scale.levels_S[-1]))
     per_siemens, unit = 10.0**-exponent, unit_text(exponent, "S")
     _scatter(upper, tally, per_siemens)
