@@ -51,9 +51,7 @@ def _schemes() -> list[Entry]:
     from programming.bias import SCHEMES
 
     def summary(word: float, bit: float) -> str:
-        return (
-            f"unselected word lines at {word:.3g} V, unselected bit lines at {bit:.3g} V, for 1 V on the selected cell"
-        )
+        return f"unselected word lines at {word:.3g} V, unselected bit lines at {bit:.3g} V, for 1 V on the selected cell"
 
     listed = [
         {"name": name, "summary": summary(scheme.word, scheme.bit), "word": scheme.word, "bit": scheme.bit}
@@ -66,6 +64,4 @@ def _schemes() -> list[Entry]:
 def _scenarios() -> list[Entry]:
     from benchmarks.shipped_scenarios import scenario_files, scenario_title
 
-    return [
-        {"name": name, "summary": scenario_title(path), "path": str(path)} for name, path in scenario_files().items()
-    ]
+    return [{"name": name, "summary": scenario_title(path), "path": str(path)} for name, path in scenario_files().items()]

@@ -97,6 +97,4 @@ def train(low_S: float, high_S: float) -> Classifier:
     x = inputs[:TRAINING_DIGITS]
     wanted = np.where(labels[:TRAINING_DIGITS, None] == np.arange(CLASSES), 1.0, -1.0)
     weights = np.linalg.solve(x.T @ x + np.eye(INPUTS), x.T @ wanted)
-    return Classifier(
-        np.asarray(weights, dtype=np.float64), inputs[TRAINING_DIGITS:], labels[TRAINING_DIGITS:], low_S, high_S
-    )
+    return Classifier(np.asarray(weights, dtype=np.float64), inputs[TRAINING_DIGITS:], labels[TRAINING_DIGITS:], low_S, high_S)

@@ -34,9 +34,7 @@ class CommandLine(click.Group):
         command: click.Command = import_module(COMMANDS[cmd_name]).command
         return command
 
-    def resolve_command(
-        self, ctx: click.Context, args: list[str]
-    ) -> tuple[str | None, click.Command | None, list[str]]:
+    def resolve_command(self, ctx: click.Context, args: list[str]) -> tuple[str | None, click.Command | None, list[str]]:
         """Raises click.UsageError for an unknown command, with the closest one that exists."""
         if args and args[0] not in COMMANDS and not args[0].startswith("-"):
             hint = closest(args[0], COMMANDS)
@@ -68,9 +66,7 @@ def _print_version(context: click.Context, _parameter: click.Parameter, asked: b
     invoke_without_command=True,
     epilog="Exit status: 0 done, 1 a gate failed, 2 bad input, 3 a fault of the program, 130 interrupted.",
 )
-@click.option(
-    "--version", is_flag=True, is_eager=True, expose_value=False, callback=_print_version, help="Print the version."
-)
+@click.option("--version", is_flag=True, is_eager=True, expose_value=False, callback=_print_version, help="Print the version.")
 @click.pass_context
 def main(context: click.Context) -> None:
     """A bench for write-verify programming of resistive-memory arrays.

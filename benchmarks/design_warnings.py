@@ -121,9 +121,7 @@ def _half_select(job: Job, cells: _Cells) -> Iterator[str]:
         full = _pulse_voltage(job, name)
         for which, fraction in _classes(job):
             voltage = fraction * full
-            pulse = (
-                f"a {name.upper()} pulse of {text_of(abs(full), 'V')} puts {text_of(voltage, 'V')} on the {which} cells"
-            )
+            pulse = f"a {name.upper()} pulse of {text_of(abs(full), 'V')} puts {text_of(voltage, 'V')} on the {which} cells"
             if not cells.has_dead_zone(voltage):
                 yield from _creep(job, cells, name, voltage, pulse)
             elif cells.moves(voltage):

@@ -39,9 +39,7 @@ def check_strategy_shape(strategy: CellStrategy) -> None:
     _check_function(strategy.name, "decide", strategy.decide, _DECIDE_ARGUMENTS)
     for name, known in _SERIES.items():
         if getattr(strategy, name) not in known:
-            raise BadInputError(
-                f"{strategy.name}: {name} must be one of {listed(known)}, is {getattr(strategy, name)!r}"
-            )
+            raise BadInputError(f"{strategy.name}: {name} must be one of {listed(known)}, is {getattr(strategy, name)!r}")
 
 
 def _check_function(owner: str, name: str, function: object, count: int) -> None:

@@ -82,9 +82,7 @@ def _converted(number: str, unit_text: str, unit: str, value: str) -> float:
     else:
         target = registry().Unit(unit)
         if given.dimensionality != target.dimensionality or unit_text in FRACTION_UNITS:
-            raise QuantityError(
-                f"must be {wanted}, got {shown(value)}, {_kind_of(given)}{_other_case(unit_text, target)}"
-            )
+            raise QuantityError(f"must be {wanted}, got {shown(value)}, {_kind_of(given)}{_other_case(unit_text, target)}")
     try:
         return float(registry().Quantity(Decimal(number), given).to(target).magnitude)
     except ArithmeticError as error:

@@ -45,9 +45,7 @@ class Scenario:
     user_code: Sequence[Path]
 
 
-def load_scenario(
-    reference: str, allow_code: bool = False, seed: int | None = None, dies: int | None = None
-) -> Scenario:
+def load_scenario(reference: str, allow_code: bool = False, seed: int | None = None, dies: int | None = None) -> Scenario:
     """The scenario of a path, or of the name of one that ships.
 
     allow_code: run Python files that the scenario names. seed, dies: take the place of those in the file.

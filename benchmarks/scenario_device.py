@@ -14,7 +14,7 @@ from benchmarks.plugin_file import PluginFile, blaming_user_code, is_plugin_refe
 from benchmarks.plugin_shape import check_device_shape
 from benchmarks.quantities import QuantityError, parse_quantity, text_of
 from benchmarks.scenario_schema import DeviceSection, SpreadSection
-from device_models.catalog import device_names, load_device
+from device_models.catalog import BUILT_IN, device_names, load_device
 from device_models.contract import DeviceModel, NoiseLevels, ParameterSet, Quantity, Spread
 from programming.job import Cell, Faults, ParameterSpread
 from programming.prepare import spread_size
@@ -84,8 +84,10 @@ def _find_model(name: str, folder: Path, allow_code: bool) -> tuple[DeviceModel,
         names = device_names()
         hint = closest(name, names)
         raise BadInputError(f"[device] model: unknown model {shown(name)}{hint}; known are {listed(names)}") from None
-    except TypeError as error:
-        raise BadInputError(f"[device] model: {error}") from error
+    except Exception as error:  # whatever an installed package raises
+        if name in BUILT_IN:
+            raise
+        raise BadInputError(f"[device] model: {shown(name)} cannot be loaded: {type(error).__name__}: {error}") from error
 
 
 def _find_set(section: DeviceSection, model: DeviceModel) -> ParameterSet:

@@ -14,7 +14,7 @@ from benchmarks.scenario_device import ResolvedDevice, resolve_device
 from benchmarks.scenario_schema import PulseSection, ScenarioFile, SchemeFractions, VerifySection
 from benchmarks.scenario_targets import ResolvedTargets, resolve_targets
 from programming.bias import SCHEMES, BiasScheme
-from programming.catalog import load_strategy, strategy_names
+from programming.catalog import BUILT_IN, load_strategy, strategy_names
 from programming.job import Job, PulseTrain, Targets, Verify
 from programming.strategy_contract import CellStrategy
 
@@ -84,8 +84,12 @@ def _find_strategy(name: str, folder: Path, allow_code: bool) -> tuple[CellStrat
         known = f"known are {listed(names)}"
         hint = closest(name, names)
         raise BadInputError(f"[programming] strategy: unknown strategy {shown(name)}{hint}; {known}") from None
-    except TypeError as error:
-        raise BadInputError(f"[programming] strategy: {error}") from error
+    except Exception as error:  # whatever an installed package raises
+        if name in BUILT_IN:
+            raise
+        raise BadInputError(
+            f"[programming] strategy: {shown(name)} cannot be loaded: {type(error).__name__}: {error}"
+        ) from error
 
 
 def _bias(fractions: SchemeFractions) -> BiasScheme:
@@ -102,9 +106,7 @@ def _train(section: PulseSection, name: str, strategy: CellStrategy, resolution:
     place = f"[programming.{name}]"
     if section.start < 0.5 * resolution:
         got = text_of(section.start, "V")
-        raise BadInputError(
-            f"{place} start: must not round to 0 V at a resolution of {text_of(resolution, 'V')}, got {got}"
-        )
+        raise BadInputError(f"{place} start: must not round to 0 V at a resolution of {text_of(resolution, 'V')}, got {got}")
     if strategy.amplitudes == "staircase" and stop > section.start and section.step == 0.0:
         raise BadInputError(f"{place} step: is missing ({strategy.name} steps the amplitude from start to stop)")
     if strategy.widths == "staircase" and width_stop > section.width and section.width_step == 0.0:

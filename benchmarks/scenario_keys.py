@@ -54,9 +54,7 @@ class Section(BaseModel):
         return key in self.model_fields_set
 
 
-def quantity(
-    unit: str, above: float | None = None, low: float | None = None, high: float | None = None
-) -> BeforeValidator:
+def quantity(unit: str, above: float | None = None, low: float | None = None, high: float | None = None) -> BeforeValidator:
     """Text with a unit to a float in `unit`; `above` exclusive, `low` and `high` inclusive limits in that unit."""
 
     def convert(value: object) -> float:

@@ -108,9 +108,9 @@ class DeviceSection(Section):
 class TargetsSection(Section):
     """[targets]: what the cells should become."""
 
-    kind: Annotated[
-        Literal["levels", "uniform", "file", "classifier"], one_of(("levels", "uniform", "file", "classifier"))
-    ] = "levels"
+    kind: Annotated[Literal["levels", "uniform", "file", "classifier"], one_of(("levels", "uniform", "file", "classifier"))] = (
+        "levels"
+    )
     low: PositiveConductance | None = None
     high: PositiveConductance | None = None
     levels: Annotated[int, Field(ge=2, le=4096)] = 16
@@ -172,9 +172,7 @@ def _read_scheme(value: object) -> object:
         raise complain(f"{shown(value)} is {UNAVAILABLE}; available: {listed(SCHEMES)}")
     if value not in SCHEMES:
         hint = closest(value, SCHEMES) if isinstance(value, str) else ""
-        raise complain(
-            f"must be one of {listed(SCHEMES)} or a table {{word = ..., bit = ...}}, got {shown(value)}{hint}"
-        )
+        raise complain(f"must be one of {listed(SCHEMES)} or a table {{word = ..., bit = ...}}, got {shown(value)}{hint}")
     return SchemeFractions(word=SCHEMES[str(value)].word, bit=SCHEMES[str(value)].bit)
 
 

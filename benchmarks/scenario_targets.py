@@ -60,9 +60,7 @@ def _check_range(low: float, high: float, range_S: tuple[float, float]) -> None:
             raise BadInputError(f"[targets] {key}: {allowed}, got {text_of(value, 'S')}")
 
 
-def _from_file(
-    section: TargetsSection, array: ArraySection, folder: Path, range_S: tuple[float, float]
-) -> ResolvedTargets:
+def _from_file(section: TargetsSection, array: ArraySection, folder: Path, range_S: tuple[float, float]) -> ResolvedTargets:
     assert section.path is not None
     path = Path(section.path)
     suffix = path.suffix.lower()

@@ -69,9 +69,7 @@ def _from_csv(content: bytes, path: Path) -> Matrix:
         if len(fields) != len(lines[0]):
             got = f"row {row} (counted from 0) has {len(fields)} fields, row 0 has {len(lines[0])}"
             raise BadInputError(f"{path}: all rows must be of one length: {got}")
-    values = [
-        [_number(field, path, row, column) for column, field in enumerate(line)] for row, line in enumerate(lines)
-    ]
+    values = [[_number(field, path, row, column) for column, field in enumerate(line)] for row, line in enumerate(lines)]
     return np.array(values, dtype=np.float64)
 
 

@@ -8,6 +8,7 @@ from pathlib import Path
 
 import pytest
 
+from benchmarks.available import available
 from benchmarks.errors import BadInputError
 from benchmarks.scenario import Scenario
 from tests.scenario_files import load
@@ -118,3 +119,24 @@ def test_digest_by_hand(tmp_path: Path) -> None:
     parts = [json.dumps(dict(scenario.document), sort_keys=True, separators=(",", ":")).encode(), b"", CELL.encode(), b""]
     joined = b"".join(len(part).to_bytes(8, "big") + part for part in parts)
     assert scenario.digest == hashlib.sha256(joined).hexdigest()
+
+
+# ---- installed packages
+
+
+def test_an_installed_package_adds_a_model_and_a_broken_one_is_told(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    """Two distributions as pip would leave them: metadata with an entry point each, one of which leads nowhere."""
+    (tmp_path / "theirs.py").write_text(CELL)
+    for name, target in (("theirs", "theirs:MODEL"), ("broken", "nowhere_to_be_found:MODEL")):
+        folder = tmp_path / f"{name}-1.0.dist-info"
+        folder.mkdir()
+        (folder / "METADATA").write_text(f"Metadata-Version: 2.1\nName: {name}\nVersion: 1.0\n")
+        (folder / "entry_points.txt").write_text(f"[pulsewright.devices]\n{name} = {target}\n")
+    monkeypatch.syspath_prepend(str(tmp_path))
+    entries = {entry["name"]: entry["summary"] for entry in available("devices")}
+    assert "theirs" in entries
+    assert entries["broken"].startswith("cannot be loaded: ModuleNotFoundError")
+    own = ('model = "voltage_threshold"\nparameters = "demo_oxide"', 'model = "theirs"\noverrides = {speed = "1e5 1/(V s)"}')
+    assert load(tmp_path, own).job.cell.model.name == "mine"
+    with pytest.raises(BadInputError, match=r"\[device\] model: \"broken\" cannot be loaded: ModuleNotFoundError"):
+        load(tmp_path, ('"voltage_threshold"', '"broken"'))

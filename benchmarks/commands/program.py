@@ -76,9 +76,7 @@ def _all_dies(loaded: Scenario, workers: int, writer: ReportWriter | None, show_
     tally = Tally(loaded.job)
     try:
         with progress_bar("dies", loaded.dies, show_progress) as advance:
-            for summary, lines in program_dies(
-                loaded.job, loaded.dies, workers, _reduction(loaded, writer is not None)
-            ):
+            for summary, lines in program_dies(loaded.job, loaded.dies, workers, _reduction(loaded, writer is not None)):
                 tally.add(summary)
                 if writer is not None:
                     writer.add_die(lines)
