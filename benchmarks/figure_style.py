@@ -116,7 +116,9 @@ def new_figure(size: tuple[float, float]) -> Place:
 def save(figure: Figure, stem: Path) -> list[Path]:
     """Write stem.png and stem.svg, without dates; call it within house_style(). Returns the two paths."""
     png, svg = stem.with_suffix(".png"), stem.with_suffix(".svg")
-    figure.draw_without_rendering()
+    layout = figure.get_layout_engine()
+    assert layout is not None
+    layout.execute(figure)
     figure.set_layout_engine("none")
     for axes in figure.axes:
         # The last digits of the layout depend on where objects lie in memory.
