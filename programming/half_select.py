@@ -140,4 +140,4 @@ def mark_settled(die, cell, totals):  # type: ignore[no-untyped-def]
     die.cells[cell, SETTLED_DOWN] = row_down + column_down + rest_down
     die.cells[cell, SQUARE_UP] = square_up
     die.cells[cell, SQUARE_DOWN] = square_down
-    die.last_visit[cell] = np.uint32(die.counter[0])
+    die.settled_at[cell] = np.uint32(die.counter[0])

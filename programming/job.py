@@ -146,7 +146,6 @@ class Job:
 
 STATUS_NAMES = ("not_addressed", "accepted", "gave_up", "stuck")
 NOT_ADDRESSED, ACCEPTED, GAVE_UP, STUCK = range(4)
-HEALTHY, STUCK_LOW, STUCK_HIGH = range(3)
 ENERGY_PARTS = ("selected", "half_selected", "rest", "verify", "lines", "supply")
 
 

@@ -71,10 +71,12 @@ class Plan(NamedTuple):
     read_voltage: float
     integration: float
     reads: int
-    noise_linear: float  # variance of a reading is noise_linear * G + noise_square * G * G
+    noise_linear: float  # variance of one read is noise_linear * G, and that of the verify noise_square * G * G more
     noise_square: float
+    verify_square: float  # what a controller expects: verify variance noise_linear / reads * G + verify_square * G * G
     telegraph: float
     telegraph_high: float  # share of time in the high level
+    telegraph_correlation: float  # from one read to the next
     converter_step: float  # [S], 0.0 without converter
     converter_top: float  # highest code
     converter_gain: np.ndarray  # (columns,)
@@ -108,7 +110,7 @@ class Die(NamedTuple):
     status: np.ndarray  # uint8
     fault: np.ndarray  # uint8
     in_band: np.ndarray  # bool
-    last_visit: np.ndarray  # uint32, number of the visit of the last own pulse or settling
+    settled_at: np.ndarray  # uint32, moment of the last settling: number of pulses given on the die until then
     order: np.ndarray  # int32
     row_count: np.ndarray  # (rows, bins) int32: pulses each word line carried
     column_count: np.ndarray  # (columns, bins) int32
@@ -123,16 +125,17 @@ class Die(NamedTuple):
     values: np.ndarray  # scratch: parameters of the visited cell
     energy: np.ndarray  # (6,) [J]
     total: np.ndarray  # (2,) time [s]; sum of sizes of settled conductance changes [S]
-    counter: np.ndarray  # (1,) int64: number of visits so far
-    # recent stress in order, per line (rows, then columns) and for the whole array
-    line_open: np.ndarray  # (lines, 2) reference dose since the last record
-    line_sum: np.ndarray  # (lines, 2) reference dose since the start
-    line_visit: np.ndarray  # (lines, records) int64
-    line_dose: np.ndarray  # (lines, records, 2)
+    counter: np.ndarray  # (1,) int64: number of pulses so far on the die
+    # recent stress in order, in reference doses, per line (rows, then columns) and for the whole array; columns: up, down,
+    # and for lines what the same pulses would be to cells of the rest, up, down
+    line_open: np.ndarray  # (lines, 4) since the last record
+    line_sum: np.ndarray  # (lines, 4) since the start
+    line_moment: np.ndarray  # (lines, records) uint32
+    line_dose: np.ndarray  # (lines, records, 4) float32
     line_records: np.ndarray  # (lines,) int64
     all_open: np.ndarray  # (1, 2)
-    all_reference: np.ndarray  # (1, 2)
-    all_visit: np.ndarray  # (1, records)
-    all_dose: np.ndarray  # (1, records, 2)
+    all_sum_dose: np.ndarray  # (1, 2)
+    all_moment: np.ndarray  # (1, records) uint32
+    all_dose: np.ndarray  # (1, records, 2) float32
     all_records: np.ndarray  # (1,)
     stop: np.ndarray  # (1,) uint8: set from outside to end early

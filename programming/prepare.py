@@ -9,8 +9,15 @@ import numpy as np
 import numpy.typing as npt
 from scipy.special import ndtri
 
+from device_models.converter import lsb
 from device_models.random_numbers import CONVERTER, normal_by_inverse
-from device_models.read_noise import noise_coefficients
+from device_models.read_noise import (
+    noise_coefficients,
+    telegraph_averaging,
+    telegraph_correlation,
+    telegraph_occupancy,
+    telegraph_variance,
+)
 from programming.fuse import fuse
 from programming.job import Job, ParameterSpread
 from programming.plan import VARIED, Die, Plan
@@ -137,7 +144,7 @@ def _node_voltages(job: Job, pulses: dict[str, Any]) -> Floats:
 
 
 def _converter(job: Job) -> dict[str, Any]:
-    codes = 2**job.verify.bits if job.verify.bits else 0
+    bits = job.verify.bits
     gains = np.full(job.columns, 1.0 + job.verify.gain_error)
     if job.verify.gain_spread > 0.0:
         gains += [
@@ -145,48 +152,52 @@ def _converter(job: Job) -> dict[str, Any]:
             for column in range(job.columns)
         ]
     return {
-        "converter_step": job.verify.range_S / codes if codes else 0.0,
-        "converter_top": float(codes - 1),
+        "converter_step": lsb(job.verify.range_S, bits) if bits else 0.0,
+        "converter_top": float(2**bits - 1),
         "converter_gain": gains,
     }
 
 
-def read_noise_of(job: Job) -> tuple[float, float]:
-    """Coefficients (c1 [S], c2) of the variance c1 G + c2 G^2 of one reading, without telegraph noise and converter."""
-    verify = job.verify
-    linear, square = noise_coefficients(
-        verify.voltage_V,
-        verify.integration_s,
-        job.temperature_K,
-        job.cell.noise,
-        verify.thermal,
-        verify.shot,
-        verify.flicker,
-        verify.flicker_low_Hz,
-    )
-    return float(linear), float(square)
+def read_noise_of(job: Job) -> dict[str, float]:
+    """The noise fields of a plan: coefficients of the variances of one read and of one verify, and the two-level signal."""
+    verify, noise = job.verify, job.cell.noise
+
+    def coefficients(integration: float) -> tuple[float, float]:
+        return noise_coefficients(
+            verify.voltage_V,
+            integration,
+            job.temperature_K,
+            noise,
+            verify.thermal,
+            verify.shot,
+            verify.flicker,
+            verify.flicker_low_Hz,
+        )
+
+    square = coefficients(verify.integration_s * verify.reads)[1]
+    telegraph = telegraph_variance(noise) * telegraph_averaging(noise, verify.reads, verify.integration_s)
+    return {
+        "noise_linear": coefficients(verify.integration_s)[0],
+        "noise_square": square,
+        "verify_square": square + (telegraph if verify.telegraph else 0.0),
+        "telegraph": float(noise.telegraph) if verify.telegraph else 0.0,
+        "telegraph_high": telegraph_occupancy(noise),
+        "telegraph_correlation": telegraph_correlation(noise, verify.integration_s),
+    }
 
 
 def reading_deviation(job: Job, conductance_S: float) -> float:
     """Standard deviation of a verify of a cell at that conductance [S]: all noise, the converter, averaged reads."""
-    linear, square = read_noise_of(job)
-    telegraph, high = _telegraph(job)
-    variance = conductance_S * (linear + square * conductance_S) + (telegraph * conductance_S) ** 2 * high * (1.0 - high)
-    return math.sqrt(variance / job.verify.reads + _converter(job)["converter_step"] ** 2 / 12.0)
-
-
-def _telegraph(job: Job) -> tuple[float, float]:
-    noise = job.cell.noise
-    size = noise.telegraph if job.verify.telegraph else 0.0
-    return size, noise.telegraph_high_dwell / (noise.telegraph_low_dwell + noise.telegraph_high_dwell)
+    noise = read_noise_of(job)
+    step = _converter(job)["converter_step"]
+    variance = conductance_S * (noise["noise_linear"] / job.verify.reads + noise["verify_square"] * conductance_S)
+    return math.sqrt(variance + step * step / 12.0)
 
 
 def make_plan(job: Job) -> Plan:
     """The plan of a job. Costs a few thousand evaluations of the model, for the stuck test and the stress record."""
     pulses = _pulse_arrays(job)
     reference, both_signs = _reference_doses(job, pulses)
-    linear, square = read_noise_of(job)
-    telegraph, high_share = _telegraph(job)
     varied, law, size = spread_arrays(job)
     cycle = job.cell.cycle
     targets = job.targets
@@ -222,10 +233,7 @@ def make_plan(job: Job) -> Plan:
         read_voltage=float(job.verify.voltage_V),
         integration=float(job.verify.integration_s),
         reads=int(job.verify.reads),
-        noise_linear=linear,
-        noise_square=square,
-        telegraph=float(telegraph),
-        telegraph_high=high_share,
+        **read_noise_of(job),
         **_converter(job),
         target_kind=_TARGET_KINDS[targets.kind],
         levels=np.ascontiguousarray(targets.levels_S, dtype=np.float64),
@@ -280,7 +288,7 @@ def make_die(job: Job, plan: Plan, order: npt.NDArray[np.int32], stop: npt.NDArr
         status=np.zeros(cells, dtype=np.uint8),
         fault=np.zeros(cells, dtype=np.uint8),
         in_band=np.zeros(cells, dtype=np.bool_),
-        last_visit=np.zeros(cells, dtype=np.uint32),
+        settled_at=np.zeros(cells, dtype=np.uint32),
         order=order,
         row_count=np.zeros((job.rows, bins), dtype=np.int32),
         column_count=np.zeros((job.columns, bins), dtype=np.int32),
@@ -296,15 +304,15 @@ def make_die(job: Job, plan: Plan, order: npt.NDArray[np.int32], stop: npt.NDArr
         energy=np.zeros(6),
         total=np.zeros(2),
         counter=np.zeros(1, dtype=np.int64),
-        line_open=np.zeros((lines, 2)),
-        line_sum=np.zeros((lines, 2)),
-        line_visit=np.zeros((lines, records), dtype=np.int64),
-        line_dose=np.zeros((lines, records, 2)),
+        line_open=np.zeros((lines, 4)),
+        line_sum=np.zeros((lines, 4)),
+        line_moment=np.zeros((lines, records), dtype=np.uint32),
+        line_dose=np.zeros((lines, records, 4), dtype=np.float32),
         line_records=np.zeros(lines, dtype=np.int64),
         all_open=np.zeros((1, 2)),
-        all_reference=np.zeros((1, 2)),
-        all_visit=np.zeros((1, array_records), dtype=np.int64),
-        all_dose=np.zeros((1, array_records, 2)),
+        all_sum_dose=np.zeros((1, 2)),
+        all_moment=np.zeros((1, array_records), dtype=np.uint32),
+        all_dose=np.zeros((1, array_records, 2), dtype=np.float32),
         all_records=np.zeros(1, dtype=np.int64),
         stop=stop,
     )

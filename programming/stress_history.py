@@ -1,8 +1,8 @@
 """The order of recent stress, for cells that both polarities disturb.
 
 Settling treats doses of both polarities as finely interleaved. Where stress is mild that is right; where it wrecks the array,
-the last few units of dose leave their order in the state. So every line keeps a ring of records (number of the visit, dose
-up, dose down), in units of what a weak cell would get, one each time `history_step` units have come together. A cell with a
+the last few units of dose leave their order in the state. So every line keeps a ring of records (moment, dose up,
+dose down), in units of what a weak cell would get, one each time `history_step` units have come together. A cell with a
 large mixed debt replays the records since its last settling in order, scaled to its own doses; what is older than the
 records comes first, interleaved. Own method; checked against the plain loop.
 """
@@ -16,106 +16,131 @@ from programming.plan import STATE
 from programming.slots import advance, advance_mixed
 
 
-def note_pulse(plan, die, row, column, direction, bin_):  # type: ignore[no-untyped-def]
-    """Add one pulse to the open records of its lines and of the array."""
-    rest_polarity = direction if plan.rest_fraction > 0.0 else 1 - direction
-    die.line_open[row, direction] += plan.reference_dose[0, bin_]
-    die.line_open[plan.rows + column, direction] += plan.reference_dose[1, bin_]
-    die.all_open[0, rest_polarity] += plan.reference_dose[2, bin_]
-
-
 @compiled
-def close_record(open_dose, summed, visits, doses, count, line, visit, enough):  # type: ignore[no-untyped-def]
+def close_record(open_dose, summed, moments, doses, count, line, moment, enough):  # type: ignore[no-untyped-def]
     """Turn a line's open record into a closed one, if it holds enough; the oldest makes room."""
-    up, down = open_dose[line, 0], open_dose[line, 1]
-    if up + down < enough:
+    if open_dose[line, 0] + open_dose[line, 1] < enough:
         return
-    place = count[line] % visits.shape[1]
-    visits[line, place] = visit
-    doses[line, place, 0] = up
-    doses[line, place, 1] = down
+    place = count[line] % moments.shape[1]
+    moments[line, place] = moment
+    for column in range(open_dose.shape[1]):
+        doses[line, place, column] = open_dose[line, column]
+        summed[line, column] += open_dose[line, column]
+        open_dose[line, column] = 0.0
     count[line] += 1
-    summed[line, 0] += up
-    summed[line, 1] += down
-    open_dose[line, 0] = 0.0
-    open_dose[line, 1] = 0.0
 
 
-def close_records(plan, die, row, column):  # type: ignore[no-untyped-def]
-    """After a visit: close the records of its two lines and of the array, where they hold enough."""
-    visit = die.counter[0]
+def note_pulse(plan, die, row, column, direction, bin_):  # type: ignore[no-untyped-def]
+    """Add one pulse to the open records of its lines and of the array; close those that hold enough."""
+    moment = die.counter[0]
     enough = plan.history_step
-    for line in (row, plan.rows + column):
-        close_record(die.line_open, die.line_sum, die.line_visit, die.line_dose, die.line_records, line, visit, enough)
-    close_record(die.all_open, die.all_reference, die.all_visit, die.all_dose, die.all_records, 0, visit, enough * 0.25)
+    line = plan.rows + column
+    rest_polarity = direction if plan.rest_fraction > 0.0 else 1 - direction
+    rest_dose = plan.reference_dose[2, bin_]
+    die.line_open[row, direction] += plan.reference_dose[0, bin_]
+    die.line_open[row, 2 + rest_polarity] += rest_dose
+    die.line_open[line, direction] += plan.reference_dose[1, bin_]
+    die.line_open[line, 2 + rest_polarity] += rest_dose
+    die.all_open[0, rest_polarity] += rest_dose
+    close_record(die.line_open, die.line_sum, die.line_moment, die.line_dose, die.line_records, row, moment, enough)
+    close_record(die.line_open, die.line_sum, die.line_moment, die.line_dose, die.line_records, line, moment, enough)
+    close_record(die.all_open, die.all_sum_dose, die.all_moment, die.all_dose, die.all_records, 0, moment, 0.25 * enough)
 
 
 @compiled
-def recent(visits, doses, count, line, since):  # type: ignore[no-untyped-def]
-    """(number of records after visit `since`, their dose up, their dose down, whether older ones were lost)."""
-    records = 0
-    up = down = 0.0
-    kept = min(count[line], visits.shape[1])
-    while records < kept:
-        place = (count[line] - 1 - records) % visits.shape[1]
-        if visits[line, place] <= since:
-            return records, up, down, False
-        up += doses[line, place, 0]
-        down += doses[line, place, 1]
-        records += 1
-    return records, up, down, count[line] > visits.shape[1]
+def recent(moments, count, line, since):  # type: ignore[no-untyped-def]
+    """How many records of a line are younger than the moment `since`, and whether some that were are lost."""
+    kept = min(count[line], moments.shape[1])
+    for records in range(kept):
+        if moments[line, (count[line] - 1 - records) % moments.shape[1]] <= since:
+            return records, False
+    return kept, count[line] > moments.shape[1]
+
+
+@compiled
+def recent_dose(doses, count, line, records, column):  # type: ignore[no-untyped-def]
+    """Sum of one column over the youngest `records` of a line."""
+    total = 0.0
+    for back in range(records):
+        total += doses[line, (count[line] - 1 - back) % doses.shape[1], column]
+    return total
 
 
 @compiled
 def own_ratio(total, reference):  # type: ignore[no-untyped-def]
     """How many times the reference dose a cell gets: from the totals of both since the start."""
-    return total / reference if reference > 0.0 else 0.0
+    return max(total, 0.0) / reference if reference > 0.0 else 0.0
+
+
+def class_ratios(die, row, line, totals, polarity):  # type: ignore[no-untyped-def]
+    """The cell's own ratios for its row, its column and the rest, of one polarity (0 up, 1 down)."""
+    rest = die.all_sum_dose[0, polarity] - die.line_sum[row, 2 + polarity] - die.line_sum[line, 2 + polarity]
+    return (
+        own_ratio(totals[polarity], die.line_sum[row, polarity]),
+        own_ratio(totals[2 + polarity], die.line_sum[line, polarity]),
+        own_ratio(totals[4 + polarity], rest),
+    )
+
+
+def in_records(die, row, line, counts, ratios, polarity):  # type: ignore[no-untyped-def]
+    """The cell's dose of one polarity in the records to be replayed."""
+    row_n, col_n, all_n = counts
+    row_ratio, col_ratio, rest_ratio = ratios
+    doses, count = die.line_dose, die.line_records
+    rest = recent_dose(die.all_dose, die.all_records, 0, all_n, polarity)
+    rest -= recent_dose(doses, count, row, row_n, 2 + polarity) + recent_dose(doses, count, line, col_n, 2 + polarity)
+    return (
+        row_ratio * recent_dose(doses, count, row, row_n, polarity)
+        + col_ratio * recent_dose(doses, count, line, col_n, polarity)
+        + rest_ratio * max(rest, 0.0)
+    )
 
 
 def replay(plan, die, p, cell, row, column, totals, up, down, noise_up, noise_down):  # type: ignore[no-untyped-def]
-    """State of a cell after its unsettled doses `up` and `down`, the recent ones in order."""
-    row_up, row_down, column_up, column_down, rest_up, rest_down, _, _ = totals
-    since = np.int64(die.last_visit[cell])
+    """State of a cell after its unsettled doses `up` and `down`, the recent ones in order.
+
+    A pulse on one of the cell's own lines is in the record of the array too; there it is taken out again.
+    """
+    since = np.int64(die.settled_at[cell])
     line = plan.rows + column
-    row_n, row_u, row_d, row_lost = recent(die.line_visit, die.line_dose, die.line_records, row, since)
-    col_n, col_u, col_d, col_lost = recent(die.line_visit, die.line_dose, die.line_records, line, since)
-    all_n, all_u, all_d, all_lost = recent(die.all_visit, die.all_dose, die.all_records, 0, since)
-    row_ru, row_rd = own_ratio(row_up, die.line_sum[row, 0]), own_ratio(row_down, die.line_sum[row, 1])
-    col_ru, col_rd = own_ratio(column_up, die.line_sum[line, 0]), own_ratio(column_down, die.line_sum[line, 1])
-    all_ru, all_rd = own_ratio(rest_up, die.all_reference[0, 0]), own_ratio(rest_down, die.all_reference[0, 1])
-    recent_up = row_ru * row_u + col_ru * col_u + all_ru * all_u
-    recent_down = row_rd * row_d + col_rd * col_d + all_rd * all_d
+    row_n, row_lost = recent(die.line_moment, die.line_records, row, since)
+    col_n, col_lost = recent(die.line_moment, die.line_records, line, since)
+    all_n, all_lost = recent(die.all_moment, die.all_records, 0, since)
     lost = row_lost or col_lost or all_lost
+    ups = class_ratios(die, row, line, totals, 0)
+    downs = class_ratios(die, row, line, totals, 1)
+    recent_up = in_records(die, row, line, (row_n, col_n, all_n), ups, 0)
+    recent_down = in_records(die, row, line, (row_n, col_n, all_n), downs, 1)
     # records that reach back to the last settling hold the whole debt; rounded records may hold a little too much
     scale_up = up / recent_up if recent_up > 0.0 and (not lost or recent_up > up) else 1.0
     scale_down = down / recent_down if recent_down > 0.0 and (not lost or recent_down > down) else 1.0
-    state = advance_mixed(
-        die.cells[cell, STATE],
-        max(up - scale_up * recent_up, 0.0) * noise_up,
-        max(down - scale_down * recent_down, 0.0) * noise_down,
-        p,
-    )
+    older_up, older_down = max(up - scale_up * recent_up, 0.0), max(down - scale_down * recent_down, 0.0)
+    state = advance_mixed(die.cells[cell, STATE], older_up * noise_up, older_down * noise_down, p)
     scale_up *= noise_up
     scale_down *= noise_down
+    waiting_up = waiting_down = 0.0
     never = 1 << 62
     while row_n > 0 or col_n > 0 or all_n > 0:
-        row_place = (die.line_records[row] - row_n) % die.line_visit.shape[1]
-        col_place = (die.line_records[line] - col_n) % die.line_visit.shape[1]
-        all_place = (die.all_records[0] - all_n) % die.all_visit.shape[1]
-        row_visit = die.line_visit[row, row_place] if row_n > 0 else never
-        col_visit = die.line_visit[line, col_place] if col_n > 0 else never
-        all_visit = die.all_visit[0, all_place] if all_n > 0 else never
-        if row_visit <= col_visit and row_visit <= all_visit:
-            dose_up = row_ru * die.line_dose[row, row_place, 0]
-            dose_down = row_rd * die.line_dose[row, row_place, 1]
-            row_n -= 1
-        elif col_visit <= all_visit:
-            dose_up = col_ru * die.line_dose[line, col_place, 0]
-            dose_down = col_rd * die.line_dose[line, col_place, 1]
-            col_n -= 1
+        row_place = (die.line_records[row] - row_n) % die.line_moment.shape[1]
+        col_place = (die.line_records[line] - col_n) % die.line_moment.shape[1]
+        row_moment = np.int64(die.line_moment[row, row_place]) if row_n > 0 else never
+        col_moment = np.int64(die.line_moment[line, col_place]) if col_n > 0 else never
+        all_place = (die.all_records[0] - all_n) % die.all_moment.shape[1]
+        all_moment = np.int64(die.all_moment[0, all_place]) if all_n > 0 else never
+        if min(row_moment, col_moment) <= all_moment:
+            own_row = row_moment <= col_moment
+            own, place = (row, row_place) if own_row else (line, col_place)
+            dose_up = (ups[0] if own_row else ups[1]) * die.line_dose[own, place, 0]
+            dose_down = (downs[0] if own_row else downs[1]) * die.line_dose[own, place, 1]
+            waiting_up -= die.line_dose[own, place, 2]
+            waiting_down -= die.line_dose[own, place, 3]
+            row_n -= 1 if own_row else 0
+            col_n -= 0 if own_row else 1
         else:
-            dose_up = all_ru * die.all_dose[0, all_place, 0]
-            dose_down = all_rd * die.all_dose[0, all_place, 1]
+            waiting_up += die.all_dose[0, all_place, 0]
+            waiting_down += die.all_dose[0, all_place, 1]
+            dose_up, dose_down = ups[2] * max(waiting_up, 0.0), downs[2] * max(waiting_down, 0.0)
+            waiting_up, waiting_down = min(waiting_up, 0.0), min(waiting_down, 0.0)
             all_n -= 1
         state = advance(state, 0.5 * scale_up * dose_up, p)
         state = advance(state, -scale_down * dose_down, p)

@@ -19,9 +19,7 @@ def looks_stuck(plan, nominal, first, reading, evidence):  # type: ignore[no-unt
     """
     if evidence == 0.0:
         return False
-    variance = first * (plan.noise_linear + plan.noise_square * first) / plan.reads
-    telegraph = plan.telegraph * plan.telegraph * plan.telegraph_high * (1.0 - plan.telegraph_high)
-    variance += telegraph * first * first / plan.reads
+    variance = first * (plan.noise_linear / plan.reads + plan.verify_square * first)
     variance += plan.converter_step * plan.converter_step / 12.0
     hidden = plan.stuck_limit * math.sqrt(2.0 * max(variance, 0.0)) + plan.converter_step
     if abs(reading - first) > hidden:

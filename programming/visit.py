@@ -14,7 +14,7 @@ from programming.plan import DISTURBANCE_S, FINAL_S, OWN_COLUMN, OWN_REST, OWN_R
 from programming.reading import read_cell
 from programming.slots import advance, conductance, decide, rate, record
 from programming.strategy_contract import ACCEPT, GIVE_UP, READ, SET
-from programming.stress_history import close_records, note_pulse
+from programming.stress_history import note_pulse
 from programming.stuck_test import looks_stuck
 
 
@@ -60,6 +60,7 @@ def give_pulse(plan, die, p, die_number, cell, row, column, direction, index, wi
     die.row_count[row, bin_] += 1
     die.column_count[column, bin_] += 1
     die.all_count[bin_] += 1
+    die.counter[0] += 1
     die.top[direction] = max(die.top[direction], index)
     add_pulse_energy(plan, die, p, before, after, dose, row, column, direction, amplitude, width)
     die.total[0] += width + plan.overhead[direction]
@@ -151,11 +152,8 @@ def visit(plan, die, rules, nominal, die_number, cell, visit_pass, score):  # ty
     if score:
         score_cell(plan, die, p, cell, totals)
         return
-    die.counter[0] += 1
     change_sums(plan, die, p, stale, row, column, -1.0)
     totals, given = program_cell(plan, die, rules, p, nominal, die_number, cell, row, column, totals)
-    if plan.history != 0:
-        close_records(plan, die, row, column)
     mark_settled(die, cell, totals)
     if given > 0:
         mark_own_pulse(die, cell, totals)
