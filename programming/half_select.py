@@ -28,7 +28,9 @@ def find_stress_rates(plan, die, p):  # type: ignore[no-untyped-def]
             voltage = sign * plan.amplitudes[index]
             row = rate(plan.row_fraction * voltage, p)
             column = row if same else rate(plan.column_fraction * voltage, p)
-            rest = 0.0 if plan.rest_fraction == 0.0 else rate(plan.rest_fraction * voltage, p)
+            rest = 0.0
+            if plan.rest_fraction != 0.0 and plan.mirrored == 0:
+                rest = rate(plan.rest_fraction * voltage, p)
             if row == 0.0 and column == 0.0 and rest == 0.0:
                 break
             die.stress_rate[0, index] = row
@@ -36,43 +38,57 @@ def find_stress_rates(plan, die, p):  # type: ignore[no-untyped-def]
             die.stress_rate[2, index] = rest
             index -= 1
         die.stress_low[direction] = index + 1
+    if plan.mirrored != 0:
+        mirror_rest_rates(plan, die)
+
+
+def mirror_rest_rates(plan, die):  # type: ignore[no-untyped-def]
+    """Rates of the rest where it sees the same voltages as the rows do in the other direction (V/3)."""
+    half = plan.amplitude_first[1]
+    low = min(die.stress_low[0], die.stress_low[1] - half)
+    for direction in range(2):
+        for index in range(half * direction + low, die.stress_low[direction]):
+            die.stress_rate[0, index] = 0.0
+            die.stress_rate[1, index] = 0.0
+        die.stress_low[direction] = half * direction + low
+    for index in range(low, half):
+        die.stress_rate[2, index] = die.stress_rate[0, half + index]
+        die.stress_rate[2, half + index] = die.stress_rate[0, index]
 
 
 def ledger_totals(plan, die, row, column):  # type: ignore[no-untyped-def]
     """Doses of the visited cell from all pulses so far: up and down by class (row, column, rest), and sums of squares."""
     row_up = row_down = column_up = column_down = rest_up = rest_down = square_up = square_down = 0.0
     for direction in range(2):
-        first = plan.amplitude_first[direction]
-        width_first = plan.width_first[direction]
-        width_count = plan.width_first[direction + 1] - width_first
-        for index in range(die.stress_low[direction], die.top[direction] + 1):
-            for width in range(width_count):
-                bin_ = plan.bin_first[direction] + (index - first) * width_count + width
-                time = plan.widths[width_first + width]
-                row_pulses = die.row_count[row, bin_]
-                column_pulses = die.column_count[column, bin_]
-                rest_pulses = die.all_count[bin_] - row_pulses - column_pulses
-                row_dose = die.stress_rate[0, index] * time
-                column_dose = die.stress_rate[1, index] * time
-                rest_dose = die.stress_rate[2, index] * time
-                if row_dose > 0.0:
-                    row_up += row_pulses * row_dose
-                    square_up += row_pulses * row_dose * row_dose
-                else:
-                    row_down -= row_pulses * row_dose
-                    square_down += row_pulses * row_dose * row_dose
-                if column_dose > 0.0:
-                    column_up += column_pulses * column_dose
-                    square_up += column_pulses * column_dose * column_dose
-                else:
-                    column_down -= column_pulses * column_dose
-                    square_down += column_pulses * column_dose * column_dose
-                if rest_dose > 0.0:
-                    rest_up += rest_pulses * rest_dose
-                    square_up += rest_pulses * rest_dose * rest_dose
-                else:
-                    rest_down -= rest_pulses * rest_dose
-                    square_down += rest_pulses * rest_dose * rest_dose
+        amplitude_first = plan.amplitude_first[direction]
+        widths = plan.width_first[direction + 1] - plan.width_first[direction]
+        first = plan.bin_first[direction] + (die.stress_low[direction] - amplitude_first) * widths
+        end = plan.bin_first[direction] + (die.top[direction] + 1 - amplitude_first) * widths
+        for bin_ in range(first, end):
+            index = plan.bin_amplitude[bin_]
+            time = plan.bin_width[bin_]
+            row_pulses = die.row_count[row, bin_]
+            column_pulses = die.column_count[column, bin_]
+            rest_pulses = die.all_count[bin_] - row_pulses - column_pulses
+            row_dose = die.stress_rate[0, index] * time
+            column_dose = die.stress_rate[1, index] * time
+            rest_dose = die.stress_rate[2, index] * time
+            row_sum, column_sum, rest_sum = row_pulses * row_dose, column_pulses * column_dose, rest_pulses * rest_dose
+            up, down = max(row_dose, 0.0), max(-row_dose, 0.0)
+            row_up += row_pulses * up
+            row_down += row_pulses * down
+            square_up += row_sum * up
+            square_down -= row_sum * down
+            up, down = max(column_dose, 0.0), max(-column_dose, 0.0)
+            column_up += column_pulses * up
+            column_down += column_pulses * down
+            square_up += column_sum * up
+            square_down -= column_sum * down
+            up, down = max(rest_dose, 0.0), max(-rest_dose, 0.0)
+            rest_up += rest_pulses * up
+            rest_down += rest_pulses * down
+            square_up += rest_sum * up
+            square_down -= rest_sum * down
     return row_up, row_down, column_up, column_down, rest_up, rest_down, square_up, square_down
 
 

@@ -45,6 +45,9 @@ class Plan(NamedTuple):
     amplitude_first: np.ndarray  # (3,) where each direction's amplitudes begin; the last is the total
     width_first: np.ndarray  # (3,)
     bin_first: np.ndarray  # (3,)
+    bin_amplitude: np.ndarray  # (bins,) place of each bin's amplitude
+    bin_width: np.ndarray  # (bins,) [s]
+    mirrored: int  # 1: the rest sees in each direction what the rows see in the other
     amplitude_spacing: np.ndarray  # (2,) [V]
     width_spacing: np.ndarray  # (2,) [s]
     overhead: np.ndarray  # (2,) [s] edges and pause around each pulse

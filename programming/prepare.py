@@ -86,6 +86,14 @@ def nominal_cell(job: Job) -> tuple[float, float, float]:
     return fuse(job.cell.model, job.strategy).nominal_cell(base_values(job), float(job.verify.voltage_V))
 
 
+def _class_fractions(job: Job) -> dict[str, float]:
+    """Fraction of the selected voltage on each class of cell; sizes that differ by rounding only are made equal."""
+    row, column, rest = job.bias.same_row, job.bias.same_column, job.bias.rest
+    column = row if math.isclose(column, row, rel_tol=1e-12) else column
+    rest = math.copysign(row, rest) if math.isclose(abs(rest), row, rel_tol=1e-12) else rest
+    return {"row_fraction": row, "column_fraction": column, "rest_fraction": rest}
+
+
 def _pulse_arrays(job: Job) -> dict[str, Any]:
     """Grids of both directions, with the voltage and width of every ledger bin."""
     amplitudes, widths, spacings, width_spacings = [], [], [], []
@@ -96,6 +104,7 @@ def _pulse_arrays(job: Job) -> dict[str, Any]:
         widths.append(times)
         spacings.append(spacing)
         width_spacings.append(width_spacing)
+    fractions = _class_fractions(job)
     sign = np.array([1.0, -1.0]) * job.cell.model.set_polarity
     bins = [a.size * w.size for a, w in zip(amplitudes, widths, strict=True)]
     return {
@@ -108,6 +117,15 @@ def _pulse_arrays(job: Job) -> dict[str, Any]:
         "width_spacing": np.array(width_spacings),
         "cell_sign": sign,
         "bin_voltage": np.concatenate([np.repeat(a * s, w.size) for a, w, s in zip(amplitudes, widths, sign, strict=True)]),
+        "bin_amplitude": np.concatenate(
+            [
+                first + np.repeat(np.arange(a.size), w.size)
+                for first, a, w in zip((0, amplitudes[0].size), amplitudes, widths, strict=True)
+            ]
+        ),
+        "mirrored": int(
+            fractions["rest_fraction"] == -fractions["row_fraction"] and np.array_equal(amplitudes[0], amplitudes[1])
+        ),
         "bin_width": np.concatenate([np.tile(w, a.size) for a, w in zip(amplitudes, widths, strict=True)]),
     }
 
@@ -206,9 +224,7 @@ def make_plan(job: Job) -> Plan:
         seed=np.uint64(job.seed),
         rows=job.rows,
         columns=job.columns,
-        row_fraction=job.bias.same_row,
-        column_fraction=job.bias.same_column,
-        rest_fraction=job.bias.rest,
+        **_class_fractions(job),
         word_fraction=job.bias.word,
         bit_fraction=job.bias.bit,
         **{name: pulses[name] for name in Plan._fields if name in pulses},

@@ -12,17 +12,20 @@ import math
 from programming.slots import advance, conductance, state_of
 
 
-def looks_stuck(plan, nominal, first, reading, evidence):  # type: ignore[no-untyped-def]
-    """True if a cell first read at `first` [S] must have moved by now, and did not.
-
-    evidence: dose of a slow cell so far in this run of pulses (its sign is the direction). nominal: nominal parameters.
-    """
-    if evidence == 0.0:
-        return False
+def hidden_change(plan, first):  # type: ignore[no-untyped-def]
+    """How far two readings of an unmoved cell first read at `first` [S] may lie apart [S], noise and converter included."""
     variance = first * (plan.noise_linear / plan.reads + plan.verify_square * first)
     variance += plan.converter_step * plan.converter_step / 12.0
-    hidden = plan.stuck_limit * math.sqrt(2.0 * max(variance, 0.0)) + plan.converter_step
-    if abs(reading - first) > hidden:
+    return plan.stuck_limit * math.sqrt(2.0 * max(variance, 0.0)) + plan.converter_step
+
+
+def looks_stuck(plan, nominal, first, reading, hidden, evidence):  # type: ignore[no-untyped-def]
+    """True if a cell first read at `first` [S] must have moved by now, and did not.
+
+    hidden: hidden_change of `first` [S]. evidence: dose of a slow cell so far in this run of pulses (its sign is the
+    direction). nominal: nominal parameters.
+    """
+    if evidence == 0.0 or abs(reading - first) > hidden:
         return False
     start = state_of(first, nominal)
     expected = conductance(advance(start, evidence, nominal), plan.read_voltage, nominal)

@@ -15,7 +15,7 @@ from programming.reading import read_cell
 from programming.slots import advance, conductance, decide, rate, record
 from programming.strategy_contract import ACCEPT, GIVE_UP, READ, SET
 from programming.stress_history import note_pulse
-from programming.stuck_test import looks_stuck
+from programming.stuck_test import hidden_change, looks_stuck
 
 
 def load_parameters(plan, die, cell):  # type: ignore[no-untyped-def]
@@ -84,6 +84,7 @@ def program_cell(plan, die, rules, p, nominal, die_number, cell, row, column, to
     die.memory[:] = 0.0
     reading = read_cell(plan, die, p, die_number, cell, row, column) if plan.verifies != 0 else math.nan
     first = reading
+    hidden = hidden_change(plan, first)
     evidence = 0.0
     given = 0
     spare_reads = 64 * plan.max_pulses
@@ -114,8 +115,9 @@ def program_cell(plan, die, rules, p, nominal, die_number, cell, row, column, to
         slow = plan.slow_dose[bin_]
         if slow * evidence < 0.0:
             evidence, first = 0.0, reading
+            hidden = hidden_change(plan, first)
         evidence += slow
-        if looks_stuck(plan, nominal, first, reading, evidence):
+        if looks_stuck(plan, nominal, first, reading, hidden, evidence):
             status = STUCK
             break
     die.status[cell] = status
