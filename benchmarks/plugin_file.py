@@ -20,6 +20,7 @@ from types import ModuleType
 from typing import Generic, TypeVar
 
 from benchmarks.errors import BadInputError, closest
+from programming.code_digest import NotDigestibleError
 
 Kind = TypeVar("Kind")
 
@@ -106,6 +107,8 @@ def blaming_user_code(files: Sequence[Path]) -> Iterator[None]:
         yield
     except (BadInputError, OSError, MemoryError):
         raise
+    except NotDigestibleError as error:
+        raise BadInputError(f"{' or '.join(path.name for path in files)}: {error}") from error
     except Exception as error:
         for path in files:
             frames = [frame for frame in traceback.extract_tb(error.__traceback__) if frame.filename == str(path)]

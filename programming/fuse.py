@@ -7,11 +7,8 @@ What numba caches is a tiny generated module in the user's cache folder, named b
 
 from __future__ import annotations
 
-import os
-import tempfile
 import threading
 from collections.abc import Callable
-from pathlib import Path
 from types import FunctionType
 from typing import Any, NamedTuple
 
@@ -20,6 +17,7 @@ from numba.core.dispatcher import Dispatcher
 
 from device_models.contract import DeviceModel
 from programming import calibration, die_loop, stress_history
+from programming.code_cache import compiled_with_cache, module_file
 from programming.code_digest import code_digest
 from programming.energy import simpson_conductance
 from programming.slots import Slot
@@ -38,7 +36,6 @@ class Fused(NamedTuple):
     nominal_cell: Callable[..., tuple[float, float, float]]
 
 
-CACHE_VARIABLE = "PULSEWRIGHT_CACHE_DIR"
 _ENTRY = '''"""Generated: one model, one strategy and the programming loop, compiled together. Safe to delete."""
 
 
@@ -71,16 +68,6 @@ _fused: dict[str, Fused] = {}
 _lock = threading.Lock()
 
 
-def cache_folder() -> Path:
-    """Where compiled loops are kept: $PULSEWRIGHT_CACHE_DIR, or the user's cache folder."""
-    chosen = os.environ.get(CACHE_VARIABLE)
-    if chosen:
-        return Path(chosen)
-    from platformdirs import user_cache_path
-
-    return user_cache_path("pulsewright")
-
-
 def fuse(model: DeviceModel, strategy: CellStrategy) -> Fused:
     """The compiled loop for a model and a strategy.
 
@@ -92,8 +79,9 @@ def fuse(model: DeviceModel, strategy: CellStrategy) -> Fused:
         "sample": calibration.sample_doses,
         "nominal": calibration.nominal_cell,
         "draw_faults": _draw_faults,
+        "composer": fill_slots.__code__,
     }
-    options = repr((_ENTRY, sorted(_LOOP_OPTIONS.items()), sorted(_ENTRY_OPTIONS.items())))
+    options = (_ENTRY, tuple(sorted(_LOOP_OPTIONS.items())), tuple(sorted(_ENTRY_OPTIONS.items())))
     digest = code_digest({**parts, "options": options, **{f"slot {k}": v for k, v in fillings.items()}})
     with _lock:
         if digest not in _fused:
@@ -166,7 +154,6 @@ def _simpson(fillings: dict[str, Any]) -> Any:
 
 def _compile(digest: str, fillings: dict[str, Any]) -> Fused:
     """Put the generated module in the cache folder and hand its functions to numba with its cache on."""
-    path = _entry_file(digest)
     # numba looks the module up by name when it loads the compiled code: it must be one that can be imported
     names: dict[str, Any] = {
         "loop": fill_slots(die_loop.program_die, fillings),
@@ -175,24 +162,5 @@ def _compile(digest: str, fillings: dict[str, Any]) -> Fused:
         "draw_faults": _draw_faults,
         "__name__": __name__,
     }
-    exec(compile(_ENTRY, str(path), "exec"), names)
-    return Fused(*(njit(**_ENTRY_OPTIONS, cache=True)(names[name]) for name in Fused._fields))
-
-
-def _entry_file(digest: str) -> Path:
-    """The generated module's file, written whole or not at all; a private temporary folder if the cache is read-only."""
-    try:
-        folder = cache_folder()
-        folder.mkdir(parents=True, exist_ok=True)
-        return _write_once(folder / f"loop_{digest[:40]}.py")
-    except OSError:
-        return _write_once(Path(tempfile.mkdtemp(prefix="pulsewright-")) / f"loop_{digest[:40]}.py")
-
-
-def _write_once(path: Path) -> Path:
-    if not path.exists():
-        handle, temporary = tempfile.mkstemp(dir=path.parent, suffix=".tmp")
-        with os.fdopen(handle, "w") as file:
-            file.write(_ENTRY)
-        os.replace(temporary, path)
-    return path
+    exec(compile(_ENTRY, str(module_file(digest, _ENTRY)), "exec"), names)
+    return Fused(*(compiled_with_cache(names[name], _ENTRY_OPTIONS) for name in Fused._fields))

@@ -10,7 +10,9 @@ import pytest
 
 from benchmarks.available import available
 from benchmarks.errors import BadInputError
+from benchmarks.plugin_file import blaming_user_code
 from benchmarks.scenario import Scenario
+from programming.fuse import fuse
 from tests.scenario_files import load
 
 CELL = """\
@@ -111,6 +113,15 @@ def test_broken_code_is_told_with_file_and_line(kind: str, tmp_path: Path) -> No
         load_own(tmp_path, source)
     assert says in str(caught.value)
     assert "small.toml" in str(caught.value)
+
+
+def test_code_that_the_cache_cannot_pin_is_bad_input(tmp_path: Path) -> None:
+    source = CELL.replace("return p.speed *", 'return TABLE["k"] *').replace("class Par", 'TABLE = {"k": 1.0}\nclass Par')
+    scenario = load_own(tmp_path, source)
+    with pytest.raises(BadInputError) as caught, blaming_user_code(scenario.user_code):
+        fuse(scenario.job.cell.model, scenario.job.strategy)
+    says = "cell.py: TABLE: compiled code reaches a dict, whose value cannot be pinned for the code cache"
+    assert str(caught.value) == says
 
 
 def test_digest_by_hand(tmp_path: Path) -> None:
