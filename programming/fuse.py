@@ -60,6 +60,7 @@ _HELPER_OPTIONS = {
     "_nrt": False,
     "no_cpython_wrapper": True,
     "no_cfunc_wrapper": True,
+    "fastmath": {"arcp", "contract"},
 }
 _LOOP_OPTIONS = {**_HELPER_OPTIONS, "forceinline": True}
 _ENTRY_OPTIONS = {"error_model": "numpy", "nogil": True}
