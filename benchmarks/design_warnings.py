@@ -19,8 +19,8 @@ from benchmarks.plain_device import PlainDevice
 from benchmarks.quantities import text_of
 from benchmarks.scenario_device import spread_factor
 from programming.job import Job
-from programming.prepare import reading_deviation
 from programming.pulse_grid import amplitude_grid, width_grid
+from programming.verify_noise import reading_deviation
 
 SAMPLED_CELLS, SAMPLE_SEED = 2048, 1
 # Common practice, no source: half-select stress may take a quarter of the verify band.

@@ -16,8 +16,8 @@ from benchmarks.quantities import QuantityError, parse_quantity, text_of
 from benchmarks.scenario_schema import DeviceSection, SpreadSection
 from device_models.catalog import BUILT_IN, device_names, load_device
 from device_models.contract import DeviceModel, NoiseLevels, ParameterSet, Quantity, Spread
+from programming.cell_sample import spread_size
 from programming.job import Cell, Faults, ParameterSpread
-from programming.prepare import spread_size
 
 FROM_SCENARIO = "this scenario"
 OF_MODEL_ALONE = "all from this scenario"

@@ -30,7 +30,7 @@ _ROUNDS = 10
 
 
 @compiled
-def philox_block(counter_0, counter_1, counter_2, counter_3, key_0, key_1):  # type: ignore[no-untyped-def]
+def philox_block(counter_0, counter_1, counter_2, counter_3, key_0, key_1):
     """One Philox4x32-10 block: four 32-bit words (as uint64) from a counter of four and a key of two 32-bit words."""
     c0, c1, c2, c3 = np.uint64(counter_0), np.uint64(counter_1), np.uint64(counter_2), np.uint64(counter_3)
     k0, k1 = np.uint64(key_0), np.uint64(key_1)
@@ -47,7 +47,7 @@ def philox_block(counter_0, counter_1, counter_2, counter_3, key_0, key_1):  # t
 
 
 @compiled
-def keyed_words(seed, die, cell, purpose, event, draw):  # type: ignore[no-untyped-def]
+def keyed_words(seed, die, cell, purpose, event, draw):
     """Two 64-bit words for one draw: (seed; event, cell, die, purpose | sub-draw) -> uint64, uint64.
 
     seed: uint64. die, cell, event: below 2**32. purpose: below 2**8. draw: below 2**24.
@@ -59,13 +59,13 @@ def keyed_words(seed, die, cell, purpose, event, draw):  # type: ignore[no-untyp
 
 
 @compiled
-def unit_interval(word):  # type: ignore[no-untyped-def]
+def unit_interval(word):
     """A 64-bit word as a float strictly inside (0, 1): the top 53 bits, at the middle of their cell."""
     return (np.float64(np.int64(word >> np.uint64(12))) + 0.5) * 2.220446049250313e-16
 
 
 @compiled
-def uniform(seed, die, cell, purpose, event, draw):  # type: ignore[no-untyped-def]
+def uniform(seed, die, cell, purpose, event, draw):
     """One uniform draw, strictly inside (0, 1)."""
     return unit_interval(keyed_words(seed, die, cell, purpose, event, draw)[0])
 
@@ -90,7 +90,7 @@ _TAIL_START = float(_EDGES[1])
 
 
 @compiled
-def _ziggurat(word):  # type: ignore[no-untyped-def]
+def _ziggurat(word):
     """The quick part: (accepted, value, strip) from one 64-bit word."""
     strip = np.int64(word & np.uint64(255))
     # bits 11..63 give a signed fraction in (-1, 1); bits 0..7 the strip: disjoint, so independent
@@ -99,7 +99,7 @@ def _ziggurat(word):  # type: ignore[no-untyped-def]
 
 
 @compiled
-def _ziggurat_rare(value, strip, seed, die, cell, purpose, event, draw):  # type: ignore[no-untyped-def]
+def _ziggurat_rare(value, strip, seed, die, cell, purpose, event, draw):
     """The wedge and the tail (about 1 % of the draws): fresh sub-draws until one is accepted."""
     attempt = draw
     while True:
@@ -120,7 +120,7 @@ def _ziggurat_rare(value, strip, seed, die, cell, purpose, event, draw):  # type
 
 
 @compiled
-def normal_of_word(word, seed, die, cell, purpose, event, draw):  # type: ignore[no-untyped-def]
+def normal_of_word(word, seed, die, cell, purpose, event, draw):
     """A standard normal from a word already drawn; the rest of the key serves the rare second look."""
     accepted, value, strip = _ziggurat(word)
     if accepted:
@@ -129,20 +129,20 @@ def normal_of_word(word, seed, die, cell, purpose, event, draw):  # type: ignore
 
 
 @compiled
-def normal(seed, die, cell, purpose, event, draw):  # type: ignore[no-untyped-def]
+def normal(seed, die, cell, purpose, event, draw):
     """One standard normal by the ziggurat. Sub-draws closer than 64 apart never share a word."""
     word = keyed_words(seed, die, cell, purpose, event, draw)[0]
     return normal_of_word(word, seed, die, cell, purpose, event, draw)
 
 
 @compiled
-def _ratio(r, a0, a1, a2, a3, a4, a5, a6, a7, b1, b2, b3, b4, b5, b6, b7):  # type: ignore[no-untyped-def]
+def _ratio(r, a0, a1, a2, a3, a4, a5, a6, a7, b1, b2, b3, b4, b5, b6, b7):
     numerator = ((((((a7 * r + a6) * r + a5) * r + a4) * r + a3) * r + a2) * r + a1) * r + a0
     return numerator / (((((((b7 * r + b6) * r + b5) * r + b4) * r + b3) * r + b2) * r + b1) * r + 1.0)
 
 
 @compiled
-def inverse_normal(probability):  # type: ignore[no-untyped-def]
+def inverse_normal(probability):
     """Quantile of the standard normal, about 1e-16 relative (Wichura 1988, AS 241, routine PPND16)."""
     q = probability - 0.5
     if abs(q) <= 0.425:
@@ -174,13 +174,13 @@ def inverse_normal(probability):  # type: ignore[no-untyped-def]
 
 
 @compiled
-def normal_by_inverse(seed, die, cell, purpose, event, draw):  # type: ignore[no-untyped-def]
+def normal_by_inverse(seed, die, cell, purpose, event, draw):
     """One standard normal, monotone in its uniform."""
     return inverse_normal(uniform(seed, die, cell, purpose, event, draw))
 
 
 @compiled
-def truncated_normal(seed, die, cell, purpose, event, draw, limit):  # type: ignore[no-untyped-def]
+def truncated_normal(seed, die, cell, purpose, event, draw, limit):
     """A standard normal cut off at +-limit standard deviations (limit 0: always 0), monotone in its uniform."""
     if limit <= 0.0:
         return 0.0

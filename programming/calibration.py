@@ -15,12 +15,12 @@ from programming.slots import advance, bounds, conductance, rate, record, state_
 _SEED = np.uint64(0x5EED)
 
 
-def spread_factor(law, size, z):  # type: ignore[no-untyped-def]
+def spread_factor(law, size, z):
     """Factor on a parameter for a standard normal z: law 0 normal (size relative), 1 lognormal with mean 1."""
     return 1.0 + size * z if law == 0 else math.exp(size * z - 0.5 * size * size)
 
 
-def sample_doses(base_values, varied, law, size, truncation, voltages, widths, out):  # type: ignore[no-untyped-def]
+def sample_doses(base_values, varied, law, size, truncation, voltages, widths, out):
     """Fill out[cells, pulses] with the signed doses of sampled healthy cells; the sample is not part of any die."""
     values = base_values.copy()
     for cell in range(out.shape[0]):
@@ -33,7 +33,7 @@ def sample_doses(base_values, varied, law, size, truncation, voltages, widths, o
             out[cell, pulse] = rate(voltages[pulse], p) * widths[pulse]
 
 
-def half_way_dose(p, voltage, sign):  # type: ignore[no-untyped-def]
+def half_way_dose(p, voltage, sign):
     """Size of the dose that moves a cell from mid-range by 1 - 1/e of the way to an end; bisection on a log scale."""
     lowest, highest = bounds(p)
     middle = state_of(0.5 * (lowest + highest), p)
@@ -49,7 +49,7 @@ def half_way_dose(p, voltage, sign):  # type: ignore[no-untyped-def]
     return small
 
 
-def nominal_cell(base_values, voltage):  # type: ignore[no-untyped-def]
+def nominal_cell(base_values, voltage):
     """(lowest conductance [S], highest [S], unit dose) of the nominal cell, seen at a voltage [V]."""
     p = record(base_values)
     lowest, highest = bounds(p)

@@ -16,7 +16,7 @@ from programming.slots import bounds, record, state_of
 from programming.visit import load_parameters, visit
 
 
-def draw_faults(plan, die, die_number):  # type: ignore[no-untyped-def]
+def draw_faults(plan, die, die_number):
     """Which cells of the die are stuck, into die.fault. Apart from the rest: it allocates, which the loop may not."""
     place_faults(
         plan.seed,
@@ -31,7 +31,7 @@ def draw_faults(plan, die, die_number):  # type: ignore[no-untyped-def]
     )
 
 
-def draw_cell(plan, die, die_number, cell):  # type: ignore[no-untyped-def]
+def draw_cell(plan, die, die_number, cell):
     """The cell's own parameters and its state before programming."""
     for place in range(plan.varied.shape[0]):
         which = plan.varied[place]
@@ -52,7 +52,7 @@ def draw_cell(plan, die, die_number, cell):  # type: ignore[no-untyped-def]
     change_sums(plan, die, p, die.cells[cell, STATE], cell // plan.columns, cell % plan.columns, 1.0)
 
 
-def draw_target(plan, die_number, cell):  # type: ignore[no-untyped-def]
+def draw_target(plan, die_number, cell):
     """Target of a cell [S]; NaN where it is not addressed."""
     if plan.target_kind == 2:
         return plan.matrix[cell]
@@ -62,14 +62,14 @@ def draw_target(plan, die_number, cell):  # type: ignore[no-untyped-def]
     return plan.levels[int(u * plan.levels.shape[0])]
 
 
-def make_die(plan, die, die_number):  # type: ignore[no-untyped-def]
+def make_die(plan, die, die_number):
     """Draw the cells and targets of a fresh die; its memory is cleared and its faults are drawn already."""
     for cell in range(die.target.shape[0]):
         draw_cell(plan, die, die_number, cell)
         die.target[cell] = draw_target(plan, die_number, cell)
 
 
-def program_die(plan, die, rules, die_number):  # type: ignore[no-untyped-def]
+def program_die(plan, die, rules, die_number):
     """Simulate one die. Results are left in `die` (see programming.plan); ends early if die.stop is set."""
     make_die(plan, die, die_number)
     nominal = record(plan.base_values)

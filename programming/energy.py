@@ -11,7 +11,7 @@ from programming.plan import HALF_SELECTED, REST, SELECTED, SUPPLY
 from programming.slots import conductance, mean_conductance
 
 
-def sum_at(plan, sums, line, voltage):  # type: ignore[no-untyped-def]
+def sum_at(plan, sums, line, voltage):
     """Sum of the conductances of a line at a voltage [S]: interpolated between nodes, unless the cells are ohmic."""
     nodes = plan.node_voltages.shape[0]
     if nodes == 1:
@@ -22,7 +22,7 @@ def sum_at(plan, sums, line, voltage):  # type: ignore[no-untyped-def]
     return (1.0 - share) * sums[line, left + 1] + share * sums[line, left + 2]
 
 
-def change_sums(plan, die, p, cell_state, row, column, sign):  # type: ignore[no-untyped-def]
+def change_sums(plan, die, p, cell_state, row, column, sign):
     """Take a cell out of the line sums (sign -1) or put it back (+1)."""
     for node in range(plan.node_voltages.shape[0]):
         share = sign * conductance(cell_state, plan.node_voltages[node], p)
@@ -31,7 +31,7 @@ def change_sums(plan, die, p, cell_state, row, column, sign):  # type: ignore[no
         die.all_sum[0, node] += share
 
 
-def add_pulse_energy(plan, die, p, before, after, dose, row, column, direction, amplitude, width):  # type: ignore[no-untyped-def]
+def add_pulse_energy(plan, die, p, before, after, dose, row, column, direction, amplitude, width):
     """Add the energy of one pulse of the given amplitude [V] and width [s] to die.energy [J]."""
     voltage = plan.cell_sign[direction] * amplitude
     square_time = amplitude * amplitude * width
@@ -60,7 +60,7 @@ def add_pulse_energy(plan, die, p, before, after, dose, row, column, direction, 
     )
 
 
-def simpson_conductance(before, middle, after, voltage, p):  # type: ignore[no-untyped-def]
+def simpson_conductance(before, middle, after, voltage, p):
     """Time average of the conductance over a pulse by Simpson's rule [S]."""
     ends = conductance(before, voltage, p) + conductance(after, voltage, p)
     return (ends + 4.0 * conductance(middle, voltage, p)) / 6.0

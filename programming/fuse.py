@@ -54,7 +54,7 @@ def nominal_cell(base_values, voltage):
 # The loop is inlined into one function, so that records of arrays are taken apart once, not copied at each call; and it
 # is compiled without reference counting (it allocates nothing), which would otherwise be most of its time.
 # Nothing inside is called from Python: no wrappers, which would be a third of the compile time.
-_HELPER_OPTIONS = {
+_HELPER_OPTIONS: dict[str, Any] = {
     "error_model": "numpy",
     "nogil": True,
     "_nrt": False,
@@ -62,8 +62,8 @@ _HELPER_OPTIONS = {
     "no_cfunc_wrapper": True,
     "fastmath": {"arcp", "contract"},
 }
-_LOOP_OPTIONS = {**_HELPER_OPTIONS, "forceinline": True}
-_ENTRY_OPTIONS = {"error_model": "numpy", "nogil": True}
+_LOOP_OPTIONS: dict[str, Any] = {**_HELPER_OPTIONS, "forceinline": True}
+_ENTRY_OPTIONS: dict[str, Any] = {"error_model": "numpy", "nogil": True}
 _draw_faults = njit(**_ENTRY_OPTIONS)(die_loop.draw_faults)
 _fused: dict[str, Fused] = {}
 _lock = threading.Lock()
@@ -106,7 +106,7 @@ def slot_fillings(model: DeviceModel, strategy: CellStrategy) -> dict[str, Any]:
     return fillings
 
 
-def fill_slots(function: FunctionType, fillings: dict[str, Any], options: dict[str, Any] | None = None) -> Any:
+def fill_slots(function: Callable[..., Any], fillings: dict[str, Any], options: dict[str, Any] | None = None) -> Any:
     """A compiled copy of a loop function and of all it calls, with the slots filled.
 
     Plain functions are parts of the loop, to be inlined. Compiled ones are helpers or a plug-in's: copied too, so that they
@@ -131,6 +131,7 @@ def fill_slots(function: FunctionType, fillings: dict[str, Any], options: dict[s
             copies[original] = njit(**options)(filled)
         return copies[original]
 
+    assert isinstance(function, FunctionType)
     return copy(function, options or _LOOP_OPTIONS)
 
 

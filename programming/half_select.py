@@ -17,7 +17,7 @@ from programming.slots import advance_mixed, conductance, rate
 from programming.stress_history import replay
 
 
-def find_stress_rates(plan, die, p):  # type: ignore[no-untyped-def]
+def find_stress_rates(plan, die, p):
     """Fill die.stress_rate for the visited cell: from the highest amplitude down to where nothing moves it any more."""
     same = plan.row_fraction == plan.column_fraction
     for direction in range(2):
@@ -42,7 +42,7 @@ def find_stress_rates(plan, die, p):  # type: ignore[no-untyped-def]
         mirror_rest_rates(plan, die)
 
 
-def mirror_rest_rates(plan, die):  # type: ignore[no-untyped-def]
+def mirror_rest_rates(plan, die):
     """Rates of the rest where it sees the same voltages as the rows do in the other direction (V/3)."""
     half = plan.amplitude_first[1]
     low = min(die.stress_low[0], die.stress_low[1] - half)
@@ -56,7 +56,7 @@ def mirror_rest_rates(plan, die):  # type: ignore[no-untyped-def]
         die.stress_rate[2, half + index] = die.stress_rate[0, index]
 
 
-def ledger_totals(plan, die, row, column):  # type: ignore[no-untyped-def]
+def ledger_totals(plan, die, row, column):
     """Doses of the visited cell from all pulses so far: up and down by class (row, column, rest), and sums of squares."""
     row_up = row_down = column_up = column_down = rest_up = rest_down = square_up = square_down = 0.0
     for direction in range(2):
@@ -92,7 +92,7 @@ def ledger_totals(plan, die, row, column):  # type: ignore[no-untyped-def]
     return row_up, row_down, column_up, column_down, rest_up, rest_down, square_up, square_down
 
 
-def add_own_pulse(plan, die, totals, direction, index, width):  # type: ignore[no-untyped-def]
+def add_own_pulse(plan, die, totals, direction, index, width):
     """Ledger totals of the visited cell after one of its own pulses: counted on its lines, but no stress to itself."""
     if index < die.stress_low[direction]:
         return totals
@@ -113,7 +113,7 @@ def add_own_pulse(plan, die, totals, direction, index, width):  # type: ignore[n
     return row_up, row_down, column_up, column_down, rest_up, rest_down, square_up, square_down
 
 
-def noisy_stress(plan, die_number, cell, visit_pass, polarity, dose, square):  # type: ignore[no-untyped-def]
+def noisy_stress(plan, die_number, cell, visit_pass, polarity, dose, square):
     """A sum of noisy doses, drawn once with the mean and variance of the sum; exact in law for a single pulse."""
     if dose <= 0.0 or square <= 0.0 or plan.cycle_law == 0 or plan.stress_noise == 0:
         return dose
@@ -125,7 +125,7 @@ def noisy_stress(plan, die_number, cell, visit_pass, polarity, dose, square):  #
     return dose * math.exp(math.sqrt(log_variance) * z - 0.5 * log_variance)
 
 
-def settle(plan, die, p, die_number, cell, row, column, visit_pass, totals):  # type: ignore[no-untyped-def]
+def settle(plan, die, p, die_number, cell, row, column, visit_pass, totals):
     """Apply the stress a cell has not yet settled, to its state. `totals` as from ledger_totals, of this moment."""
     row_up, row_down, column_up, column_down, rest_up, rest_down, square_up, square_down = totals
     up = row_up + column_up + rest_up - die.cells[cell, SETTLED_UP]
@@ -149,7 +149,7 @@ def settle(plan, die, p, die_number, cell, row, column, visit_pass, totals):  # 
     die.total[1] += abs(change)
 
 
-def mark_settled(die, cell, totals):  # type: ignore[no-untyped-def]
+def mark_settled(die, cell, totals):
     """Note that a cell's stress is settled up to `totals`."""
     row_up, row_down, column_up, column_down, rest_up, rest_down, square_up, square_down = totals
     die.cells[cell, SETTLED_UP] = row_up + column_up + rest_up

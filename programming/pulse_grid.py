@@ -6,10 +6,13 @@ the ledger.
 
 from __future__ import annotations
 
+import math
+from typing import Any
+
 import numpy as np
 import numpy.typing as npt
 
-from programming.job import PulseTrain
+from programming.job import Job, PulseTrain
 from programming.strategy_contract import CellStrategy
 
 Floats = npt.NDArray[np.float64]
@@ -23,7 +26,7 @@ def staircase_values(start: float, step: float, stop: float) -> Floats:
     values = start + step * np.arange(whole_steps + 1)
     if stop - values[-1] > 1e-9 * step:
         values = np.append(values, stop)
-    return np.minimum(values, stop)
+    return np.asarray(np.minimum(values, stop))
 
 
 def amplitude_grid(train: PulseTrain, strategy: CellStrategy, resolution: float) -> tuple[Floats, float]:
@@ -39,3 +42,51 @@ def width_grid(train: PulseTrain, strategy: CellStrategy) -> tuple[Floats, float
     """Widths [s] the strategy can ask for in one direction, and the spacing [s] by which they are looked up."""
     spacing = train.width_step if strategy.widths == "staircase" else 0.0
     return staircase_values(train.width, spacing, train.width_stop), spacing
+
+
+def class_fractions(job: Job) -> dict[str, float]:
+    """Fraction of the selected voltage on each class of cell; sizes that differ by rounding only are made equal."""
+    row, column, rest = job.bias.same_row, job.bias.same_column, job.bias.rest
+    column = row if math.isclose(column, row, rel_tol=1e-12) else column
+    rest = math.copysign(row, rest) if math.isclose(abs(rest), row, rel_tol=1e-12) else rest
+    return {"row_fraction": row, "column_fraction": column, "rest_fraction": rest}
+
+
+def pulse_fields(job: Job) -> dict[str, Any]:
+    """The fields of a plan that describe the pulses, and (more than a plan holds) the voltage of every ledger bin [V]."""
+    amplitudes, widths, spacings, width_spacings = [], [], [], []
+    for train in (job.set, job.reset):
+        values, spacing = amplitude_grid(train, job.strategy, job.resolution)
+        times, width_spacing = width_grid(train, job.strategy)
+        amplitudes.append(values)
+        widths.append(times)
+        spacings.append(spacing)
+        width_spacings.append(width_spacing)
+    fractions = class_fractions(job)
+    sign = np.array([1.0, -1.0]) * job.cell.model.set_polarity
+    bins = [a.size * w.size for a, w in zip(amplitudes, widths, strict=True)]
+    return {
+        **fractions,
+        "word_fraction": job.bias.word,
+        "bit_fraction": job.bias.bit,
+        "overhead": np.array([2.0 * train.rise + train.dead_time for train in (job.set, job.reset)]),
+        "amplitudes": np.concatenate(amplitudes),
+        "widths": np.concatenate(widths),
+        "amplitude_first": np.array([0, amplitudes[0].size, amplitudes[0].size + amplitudes[1].size]),
+        "width_first": np.array([0, widths[0].size, widths[0].size + widths[1].size]),
+        "bin_first": np.array([0, bins[0], bins[0] + bins[1]]),
+        "amplitude_spacing": np.array(spacings),
+        "width_spacing": np.array(width_spacings),
+        "cell_sign": sign,
+        "bin_voltage": np.concatenate([np.repeat(a * s, w.size) for a, w, s in zip(amplitudes, widths, sign, strict=True)]),
+        "bin_amplitude": np.concatenate(
+            [
+                first + np.repeat(np.arange(a.size), w.size)
+                for first, a, w in zip((0, amplitudes[0].size), amplitudes, widths, strict=True)
+            ]
+        ),
+        "mirrored": int(
+            fractions["rest_fraction"] == -fractions["row_fraction"] and np.array_equal(amplitudes[0], amplitudes[1])
+        ),
+        "bin_width": np.concatenate([np.tile(w, a.size) for a, w in zip(amplitudes, widths, strict=True)]),
+    }

@@ -15,7 +15,7 @@ from programming.slots import conductance
 _SHARED_DRAW = 63  # sub-draw of what all reads of one verify have in common; below it, one for each read
 
 
-def read_cell(plan, die, p, die_number, cell, row, column):  # type: ignore[no-untyped-def]
+def read_cell(plan, die, p, die_number, cell, row, column):
     """Reading of a cell [S]: noise, converter and average of `reads`; counts the verify, its energy and its time.
 
     Thermal and shot noise are fresh for each read. 1/f noise moves slowly: one draw for the whole verify. The two-level

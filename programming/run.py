@@ -10,11 +10,12 @@ from typing import TypeVar
 
 import numpy as np
 
+from programming.die_memory import clear_die, make_die
 from programming.fuse import fuse
 from programming.job import ENERGY_PARTS, NOT_ADDRESSED, STUCK, DieOutcome, Job
 from programming.orders import ORDERS
 from programming.plan import DISTURBANCE_S, FINAL_S, OWN_REST, OWN_ROW, Die
-from programming.prepare import clear_die, make_die, make_plan, make_rules
+from programming.prepare import make_plan, make_rules
 
 T = TypeVar("T")
 

@@ -17,7 +17,7 @@ from programming.slots import advance, advance_mixed
 
 
 @compiled
-def close_record(open_dose, summed, moments, doses, count, line, moment, enough):  # type: ignore[no-untyped-def]
+def close_record(open_dose, summed, moments, doses, count, line, moment, enough):
     """Turn a line's open record into a closed one, if it holds enough; the oldest makes room."""
     if open_dose[line, 0] + open_dose[line, 1] < enough:
         return
@@ -30,7 +30,7 @@ def close_record(open_dose, summed, moments, doses, count, line, moment, enough)
     count[line] += 1
 
 
-def note_pulse(plan, die, row, column, direction, bin_):  # type: ignore[no-untyped-def]
+def note_pulse(plan, die, row, column, direction, bin_):
     """Add one pulse to the open records of its lines and of the array; close those that hold enough."""
     moment = die.counter[0]
     enough = plan.history_step
@@ -48,7 +48,7 @@ def note_pulse(plan, die, row, column, direction, bin_):  # type: ignore[no-unty
 
 
 @compiled
-def recent(moments, count, line, since):  # type: ignore[no-untyped-def]
+def recent(moments, count, line, since):
     """How many records of a line are younger than the moment `since`, and whether some that were are lost."""
     kept = min(count[line], moments.shape[1])
     for records in range(kept):
@@ -58,7 +58,7 @@ def recent(moments, count, line, since):  # type: ignore[no-untyped-def]
 
 
 @compiled
-def recent_dose(doses, count, line, records, column):  # type: ignore[no-untyped-def]
+def recent_dose(doses, count, line, records, column):
     """Sum of one column over the youngest `records` of a line."""
     total = 0.0
     for back in range(records):
@@ -67,12 +67,12 @@ def recent_dose(doses, count, line, records, column):  # type: ignore[no-untyped
 
 
 @compiled
-def own_ratio(total, reference):  # type: ignore[no-untyped-def]
+def own_ratio(total, reference):
     """How many times the reference dose a cell gets: from the totals of both since the start."""
     return max(total, 0.0) / reference if reference > 0.0 else 0.0
 
 
-def class_ratios(die, row, line, totals, polarity):  # type: ignore[no-untyped-def]
+def class_ratios(die, row, line, totals, polarity):
     """The cell's own ratios for its row, its column and the rest, of one polarity (0 up, 1 down)."""
     rest = die.all_sum_dose[0, polarity] - die.line_sum[row, 2 + polarity] - die.line_sum[line, 2 + polarity]
     return (
@@ -82,7 +82,7 @@ def class_ratios(die, row, line, totals, polarity):  # type: ignore[no-untyped-d
     )
 
 
-def in_records(die, row, line, counts, ratios, polarity):  # type: ignore[no-untyped-def]
+def in_records(die, row, line, counts, ratios, polarity):
     """The cell's dose of one polarity in the records to be replayed."""
     row_n, col_n, all_n = counts
     row_ratio, col_ratio, rest_ratio = ratios
@@ -96,7 +96,7 @@ def in_records(die, row, line, counts, ratios, polarity):  # type: ignore[no-unt
     )
 
 
-def replay(plan, die, p, cell, row, column, totals, up, down, noise_up, noise_down):  # type: ignore[no-untyped-def]
+def replay(plan, die, p, cell, row, column, totals, up, down, noise_up, noise_down):
     """State of a cell after its unsettled doses `up` and `down`, the recent ones in order.
 
     A pulse on one of the cell's own lines is in the record of the array too; there it is taken out again.
@@ -148,7 +148,7 @@ def replay(plan, die, p, cell, row, column, totals, up, down, noise_up, noise_do
     return state
 
 
-def alternate(state, up, down, p):  # type: ignore[no-untyped-def]
+def alternate(state, up, down, p):
     """Stand-in for a model's own advance_mixed: symmetric alternating steps, fine for the last 64 parts of the dose."""
     if down == 0.0:
         return advance(state, up, p)

@@ -12,14 +12,14 @@ import math
 from programming.slots import advance, conductance, state_of
 
 
-def hidden_change(plan, first):  # type: ignore[no-untyped-def]
+def hidden_change(plan, first):
     """How far two readings of an unmoved cell first read at `first` [S] may lie apart [S], noise and converter included."""
     variance = first * (plan.noise_linear / plan.reads + plan.verify_square * first)
     variance += plan.converter_step * plan.converter_step / 12.0
     return plan.stuck_limit * math.sqrt(2.0 * max(variance, 0.0)) + plan.converter_step
 
 
-def looks_stuck(plan, nominal, first, reading, hidden, evidence):  # type: ignore[no-untyped-def]
+def looks_stuck(plan, nominal, first, reading, hidden, evidence):
     """True if a cell first read at `first` [S] must have moved by now, and did not.
 
     hidden: hidden_change of `first` [S]. evidence: dose of a slow cell so far in this run of pulses (its sign is the

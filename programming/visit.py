@@ -18,14 +18,14 @@ from programming.stress_history import note_pulse
 from programming.stuck_test import hidden_change, looks_stuck
 
 
-def load_parameters(plan, die, cell):  # type: ignore[no-untyped-def]
+def load_parameters(plan, die, cell):
     """Parameter record of a cell: its own values where they vary, else the nominal ones."""
     for place in range(plan.varied.shape[0]):
         die.values[plan.varied[place]] = die.cells[cell, VARIED + place]
     return record(die.values)
 
 
-def noisy_dose(plan, die_number, cell, event, dose):  # type: ignore[no-untyped-def]
+def noisy_dose(plan, die_number, cell, event, dose):
     """Dose of one own pulse with its cycle-to-cycle noise."""
     if plan.cycle_law == 0 or dose == 0.0:
         return dose
@@ -35,7 +35,7 @@ def noisy_dose(plan, die_number, cell, event, dose):  # type: ignore[no-untyped-
     return dose * math.exp(plan.cycle_sigma * z - 0.5 * plan.cycle_sigma * plan.cycle_sigma)
 
 
-def nearest(values, first, end, spacing, wanted):  # type: ignore[no-untyped-def]
+def nearest(values, first, end, spacing, wanted):
     """Index of the grid value that a wanted magnitude is rounded to; the last value need not lie on the even grid."""
     if spacing <= 0.0 or not wanted > values[first]:
         return first
@@ -44,7 +44,7 @@ def nearest(values, first, end, spacing, wanted):  # type: ignore[no-untyped-def
     return min(first + int((wanted - values[first]) / spacing + 0.5), end - 1)
 
 
-def give_pulse(plan, die, p, die_number, cell, row, column, direction, index, width_index, bin_):  # type: ignore[no-untyped-def]
+def give_pulse(plan, die, p, die_number, cell, row, column, direction, index, width_index, bin_):
     """One pulse on the selected cell: state, ledgers, energy and time."""
     amplitude = plan.amplitudes[index]
     width = plan.widths[width_index]
@@ -68,7 +68,7 @@ def give_pulse(plan, die, p, die_number, cell, row, column, direction, index, wi
         note_pulse(plan, die, row, column, direction, bin_)
 
 
-def mark_own_pulse(die, cell, totals):  # type: ignore[no-untyped-def]
+def mark_own_pulse(die, cell, totals):
     """From here on, what moves the cell is disturbance: note its state and the stress of each class so far."""
     row_up, row_down, column_up, column_down, rest_up, rest_down, _, _ = totals
     die.cells[cell, OWN_STATE] = die.cells[cell, STATE]
@@ -77,7 +77,7 @@ def mark_own_pulse(die, cell, totals):  # type: ignore[no-untyped-def]
     die.cells[cell, OWN_REST] = rest_up + rest_down
 
 
-def program_cell(plan, die, rules, p, nominal, die_number, cell, row, column, totals):  # type: ignore[no-untyped-def]
+def program_cell(plan, die, rules, p, nominal, die_number, cell, row, column, totals):
     """Write-verify on one settled cell. Returns (ledger totals after it, pulses given); sets die.status."""
     target = die.target[cell]
     tolerance = max(plan.tolerance_S, plan.tolerance_fraction * target)
@@ -124,14 +124,20 @@ def program_cell(plan, die, rules, p, nominal, die_number, cell, row, column, to
     return totals, given
 
 
-def score_cell(plan, die, p, cell, totals):  # type: ignore[no-untyped-def]
+def dose_since(total, before):
+    """What was added to a sum of doses; a difference in the last digits is rounding, not dose."""
+    dose = total - before
+    return dose if dose > 1e-12 * total else 0.0
+
+
+def score_cell(plan, die, p, cell, totals):
     """Write the results of a settled cell over its record."""
     row_up, row_down, column_up, column_down, rest_up, rest_down, _, _ = totals
     final = conductance(die.cells[cell, STATE], plan.read_voltage, p)
     own = conductance(die.cells[cell, OWN_STATE], plan.read_voltage, p)
-    row_dose = max(row_up + row_down - die.cells[cell, OWN_ROW], 0.0)
-    column_dose = max(column_up + column_down - die.cells[cell, OWN_COLUMN], 0.0)
-    rest_dose = max(rest_up + rest_down - die.cells[cell, OWN_REST], 0.0)
+    row_dose = dose_since(row_up + row_down, die.cells[cell, OWN_ROW])
+    column_dose = dose_since(column_up + column_down, die.cells[cell, OWN_COLUMN])
+    rest_dose = dose_since(rest_up + rest_down, die.cells[cell, OWN_REST])
     dose = row_dose + column_dose + rest_dose
     share = 1.0 / dose if dose > 0.0 else 0.0
     die.cells[cell, OWN_ROW] = row_dose * share
@@ -143,7 +149,7 @@ def score_cell(plan, die, p, cell, totals):  # type: ignore[no-untyped-def]
     die.in_band[cell] = abs(final - die.target[cell]) <= tolerance
 
 
-def visit(plan, die, rules, nominal, die_number, cell, visit_pass, score):  # type: ignore[no-untyped-def]
+def visit(plan, die, rules, nominal, die_number, cell, visit_pass, score):
     """Settle a cell's stress; then program it, or (score) take down how it ended."""
     row, column = cell // plan.columns, cell % plan.columns
     p = load_parameters(plan, die, cell)

@@ -9,8 +9,8 @@ import pytest
 from device_models.catalog import load_device
 from programming.job import PulseTrain, Targets
 from programming.orders import ORDERS
-from programming.prepare import read_noise_of
 from programming.run import program_dies
+from programming.verify_noise import read_noise_of
 from tests.jobs import cell_of, job
 from tests.twins import plain_random as draws
 from tests.twins.plain_programming import Bench, SinhCell, ThresholdCell

@@ -15,7 +15,7 @@ from device_models.random_numbers import CYCLE, READ, keyed_words, normal, norma
 
 
 @compiled
-def threshold_cell(pulses, seed):  # type: ignore[no-untyped-def]
+def threshold_cell(pulses, seed):
     """Demo threshold cell: one cycle normal, one exp of it, the cube, one exp of the dose; one read normal and its root."""
     u, total = 0.5, 0.0
     for i in range(pulses):
@@ -30,7 +30,7 @@ def threshold_cell(pulses, seed):  # type: ignore[no-untyped-def]
 
 
 @compiled
-def sinh_cell(pulses, seed):  # type: ignore[no-untyped-def]
+def sinh_cell(pulses, seed):
     """Demo exponential cell: as above, with three exponentials for the rate instead of the cube."""
     u, total = 0.5, 0.0
     for i in range(pulses):
@@ -46,7 +46,7 @@ def sinh_cell(pulses, seed):  # type: ignore[no-untyped-def]
 
 
 @compiled
-def _read(seed, cell, event, conductance):  # type: ignore[no-untyped-def]
+def _read(seed, cell, event, conductance):
     deviation = math.sqrt(conductance * (2e-12 + 2.5e-5 * conductance))
     word, other = keyed_words(seed, 0, cell, READ, event, 0)
     reading = conductance + deviation * normal_of_word(word, seed, 0, cell, READ, event, 0)
@@ -54,7 +54,7 @@ def _read(seed, cell, event, conductance):  # type: ignore[no-untyped-def]
     return (math.floor(reading / 4.6875e-7) + 0.5) * 4.6875e-7
 
 
-def nanoseconds(kernel, pulses: int = 1_000_000, repeats: int = 5) -> float:  # type: ignore[no-untyped-def]
+def nanoseconds(kernel, pulses: int = 1_000_000, repeats: int = 5) -> float:
     """Best of several runs, per pulse [ns]."""
     kernel(10, np.uint64(1))
     best = math.inf

@@ -7,6 +7,7 @@ touched under V/2, all cells under V/3.
 from __future__ import annotations
 
 import time
+from typing import Any
 
 import numpy as np
 import numpy.typing as npt
@@ -27,7 +28,7 @@ class EagerArray:
         self.k_on = 3.9 * rng.lognormal(-0.02, 0.198, (size, size))
         self.k_off = 3.9 * rng.lognormal(-0.02, 0.198, (size, size))
 
-    def step(self, where: tuple[object, object], voltage: float) -> None:
+    def step(self, where: Any, voltage: float) -> None:
         """One pulse of that voltage (positive: SET) on a slice of the array."""
         threshold, speed = (self.v_on, self.k_on) if voltage > 0 else (self.v_off, self.k_off)
         over = np.maximum(abs(voltage) / threshold[where] - 1.0, 0.0)

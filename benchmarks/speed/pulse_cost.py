@@ -7,10 +7,11 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
+from programming.die_memory import clear_die, make_die
 from programming.fuse import fuse
 from programming.job import Job, Targets
 from programming.orders import ORDERS
-from programming.prepare import clear_die, make_die, make_plan, make_rules
+from programming.prepare import make_plan, make_rules
 
 
 @dataclass(frozen=True)

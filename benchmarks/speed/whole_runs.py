@@ -11,10 +11,11 @@ import numpy as np
 
 from benchmarks.scenario import load_scenario
 from benchmarks.speed.jobs import speed_job
+from programming.die_memory import make_die
 from programming.job import DieOutcome
 from programming.orders import ORDERS
 from programming.plan import VARIED
-from programming.prepare import make_die, make_plan
+from programming.prepare import make_plan
 from programming.run import program_dies
 
 

@@ -12,7 +12,7 @@ from programming.strategy_contract import ACCEPT, RESET, SET, CellStrategy
 
 
 @compiled
-def decide(target, tolerance, reading, pulses, memory, rules):  # type: ignore[no-untyped-def]
+def decide(target, tolerance, reading, pulses, memory, rules):
     """memory[0]: direction of the run; memory[1]: pulses given in it."""
     error = reading - target
     if abs(error) <= tolerance:

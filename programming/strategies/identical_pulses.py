@@ -10,7 +10,7 @@ from programming.strategy_contract import ACCEPT, RESET, SET, CellStrategy
 
 
 @compiled
-def decide(target, tolerance, reading, pulses, memory, rules):  # type: ignore[no-untyped-def]
+def decide(target, tolerance, reading, pulses, memory, rules):
     """Below the band one SET pulse, above it one RESET pulse, always the train's `start` and `width`."""
     error = reading - target
     if abs(error) <= tolerance:

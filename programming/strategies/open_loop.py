@@ -11,7 +11,7 @@ from programming.strategy_contract import ACCEPT, SET, CellStrategy
 
 
 @compiled
-def decide(target, tolerance, reading, pulses, memory, rules):  # type: ignore[no-untyped-def]
+def decide(target, tolerance, reading, pulses, memory, rules):
     """One SET pulse, its amplitude linear in the target; then done."""
     if pulses > 0:
         return ACCEPT, 0.0, 0.0, 0.0
