@@ -146,7 +146,7 @@ def settle(plan, die, p, die_number, cell, row, column, visit_pass, totals):
         after = advance_mixed(before, scale_up, scale_down, p)
     die.cells[cell, STATE] = after
     change = conductance(after, plan.read_voltage, p) - conductance(before, plan.read_voltage, p)
-    die.total[1] += abs(change)
+    die.total[1] += abs(change) * (die.counter[0] - np.int64(die.settled_at[cell]))
 
 
 def mark_settled(die, cell, totals):

@@ -158,7 +158,8 @@ class DieOutcome:
     dose_share (cells, 3): how the stress since a cell's own last pulse splits over same row, same column, rest (rows
     sum to 1, or are 0 where there was none).
     energy_J: the six of ENERGY_PARTS [J], for the whole die ("supply" is apart: not part of the dissipated total).
-    half_select_error: bound on the relative error of the half-selected and rest energies by debts not yet settled.
+    half_select_error: bound on the relative error of the half-selected and rest energies: changes of conductance by stress,
+        each weighted with the share of the run it was owed before it was settled, over the sum of all conductances.
     time_s: time for the whole die, one cell after another [s]. stress_dominates: more than a tenth of the addressed cells
     ended out of their band because of disturbance (it is larger than what their own programming left as error).
     """

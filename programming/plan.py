@@ -127,7 +127,7 @@ class Die(NamedTuple):
     memory: np.ndarray  # scratch of the strategy
     values: np.ndarray  # scratch: parameters of the visited cell
     energy: np.ndarray  # (6,) [J]
-    total: np.ndarray  # (2,) time [s]; sum of sizes of settled conductance changes [S]
+    total: np.ndarray  # (2,) time [s]; sizes of settled conductance changes times the pulses they waited [S]
     counter: np.ndarray  # (1,) int64: number of pulses so far on the die
     # recent stress in order, in reference doses, per line (rows, then columns) and for the whole array; columns: up, down,
     # and for lines what the same pulses would be to cells of the rest, up, down

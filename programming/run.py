@@ -63,7 +63,7 @@ def _outcome(die: Die, die_number: int) -> DieOutcome:
     final = die.cells[:, FINAL_S]
     moved_out = (np.abs(disturbance) > np.abs(final - disturbance - die.target)) & addressed & (die.status != STUCK)
     moved_out &= ~die.in_band
-    stored = float(final.sum())
+    seen = float(final.sum()) * max(int(die.counter[0]), 1)
     assert len(ENERGY_PARTS) == die.energy.size
     return DieOutcome(
         die=die_number,
@@ -77,7 +77,7 @@ def _outcome(die: Die, die_number: int) -> DieOutcome:
         in_band=die.in_band,
         dose_share=die.cells[:, OWN_ROW : OWN_REST + 1],
         energy_J=die.energy,
-        half_select_error=float(die.total[1]) / stored if stored > 0.0 else 0.0,
+        half_select_error=float(die.total[1]) / seen if seen > 0.0 else 0.0,
         time_s=float(die.total[0]),
         stress_dominates=bool(moved_out.sum() > 0.1 * addressed.sum()),
     )
