@@ -8,8 +8,11 @@ from contextlib import contextmanager
 
 
 @contextmanager
-def progress_bar(title: str, total: int, wanted: bool) -> Iterator[Callable[[], None]]:
-    """Gives a function to call after each of `total` pieces of work; shows nothing unless wanted, and on a terminal."""
+def progress_bar(title: str, total: int, wanted: bool, first: str = "") -> Iterator[Callable[[], None]]:
+    """Gives a function to call after each of `total` pieces of work; shows nothing unless wanted, and on a terminal.
+
+    first: what to show in place of the title until the first piece is done, if that one takes longer for a reason.
+    """
     if not wanted or not sys.stderr.isatty():
         yield lambda: None
         return
@@ -18,5 +21,5 @@ def progress_bar(title: str, total: int, wanted: bool) -> Iterator[Callable[[], 
 
     columns = (TextColumn("{task.description}"), BarColumn(), MofNCompleteColumn(), TimeRemainingColumn())
     with Progress(*columns, console=Console(stderr=True), transient=True) as progress:
-        task = progress.add_task(title, total=total)
-        yield lambda: progress.advance(task)
+        task = progress.add_task(first or title, total=total)
+        yield lambda: progress.update(task, advance=1, description=title)

@@ -29,9 +29,14 @@ def cache_folder() -> Path:
     return user_cache_path("pulsewright")
 
 
+def module_path(digest: str) -> Path:
+    """Where the generated module of that digest is, or would be."""
+    return cache_folder() / f"loop_{digest[:40]}.py"
+
+
 def module_file(digest: str, source: str) -> Path:
     """The generated module of that digest, written whole or not at all. Where it cannot be written, it just isn't there."""
-    path = cache_folder() / f"loop_{digest[:40]}.py"
+    path = module_path(digest)
     with contextlib.suppress(OSError):
         path.parent.mkdir(parents=True, exist_ok=True)
         if not path.exists():
@@ -40,6 +45,12 @@ def module_file(digest: str, source: str) -> Path:
                 file.write(source)
             os.replace(temporary, path)
     return path
+
+
+def has_machine_code(digest: str, function: str) -> bool:
+    """Whether the cache holds compiled code for that function of the module of that digest."""
+    path = module_path(digest)
+    return any((path.parent / "__pycache__").glob(f"{path.stem}.{function}-*.nbc"))
 
 
 def compiled_with_cache(function: Callable[..., Any], options: dict[str, Any]) -> Any:

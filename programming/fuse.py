@@ -17,7 +17,7 @@ from numba.core.dispatcher import Dispatcher
 
 from device_models.contract import DeviceModel
 from programming import calibration, die_loop, stress_history
-from programming.code_cache import compiled_with_cache, module_file
+from programming.code_cache import compiled_with_cache, has_machine_code, module_file
 from programming.code_digest import code_digest
 from programming.energy import simpson_conductance
 from programming.slots import Slot
@@ -75,6 +75,15 @@ def fuse(model: DeviceModel, strategy: CellStrategy) -> Fused:
     Raises programming.code_digest.NotDigestibleError if a plug-in reaches something that cannot be part of a cache key.
     """
     fillings = slot_fillings(model, strategy)
+    digest = _digest(fillings)
+    with _lock:
+        if digest not in _fused:
+            _fused[digest] = _compile(digest, fillings)
+        return _fused[digest]
+
+
+def _digest(fillings: dict[str, Any]) -> str:
+    """What the loop with these fillings is called in the cache."""
     parts = {
         "loop": die_loop.program_die,
         "sample": calibration.sample_doses,
@@ -83,11 +92,12 @@ def fuse(model: DeviceModel, strategy: CellStrategy) -> Fused:
         "composer": fill_slots.__code__,
     }
     options = (_ENTRY, tuple(sorted(_LOOP_OPTIONS.items())), tuple(sorted(_ENTRY_OPTIONS.items())))
-    digest = code_digest({**parts, "options": options, **{f"slot {k}": v for k, v in fillings.items()}})
-    with _lock:
-        if digest not in _fused:
-            _fused[digest] = _compile(digest, fillings)
-        return _fused[digest]
+    return code_digest({**parts, "options": options, **{f"slot {k}": v for k, v in fillings.items()}})
+
+
+def needs_compiling(model: DeviceModel, strategy: CellStrategy) -> bool:
+    """Whether the first die of this model and strategy will wait for the compiler, for want of a cached loop."""
+    return not has_machine_code(_digest(slot_fillings(model, strategy)), "program_die")
 
 
 def slot_fillings(model: DeviceModel, strategy: CellStrategy) -> dict[str, Any]:

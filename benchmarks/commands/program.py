@@ -71,11 +71,14 @@ def _all_dies(loaded: Scenario, workers: int, writer: ReportWriter | None, show_
     from benchmarks.progress import progress_bar
     from benchmarks.result import result_object
     from benchmarks.tally import Tally
+    from programming.fuse import needs_compiling
     from programming.run import program_dies
 
+    compiling = show_progress and needs_compiling(loaded.job.cell.model, loaded.job.strategy)
+    first = "compiling the loop (once for this device and strategy)" if compiling else ""
     tally = Tally(loaded.job)
     try:
-        with progress_bar("dies", loaded.dies, show_progress) as advance:
+        with progress_bar("dies", loaded.dies, show_progress, first) as advance:
             for summary, lines in program_dies(loaded.job, loaded.dies, workers, _reduction(loaded, writer is not None)):
                 tally.add(summary)
                 if writer is not None:
