@@ -1,8 +1,9 @@
 """Energy of one pulse: what is dissipated in the selected, half-selected and other cells, and what the supplies deliver.
 
 Elementary circuit laws with ideal wires: cell dissipation I V; a rail delivers its voltage times the current it sources, and
-nothing where the current flows back into it (rails that cannot sink). Line sums of the conductance make it O(1) per pulse;
-they leave out the selected cell, and lag behind by stress that is not settled yet.
+nothing where the current flows back into it (rails that cannot sink). Line sums of the conductance make it O(1) per pulse
+(kept at a few voltages, with interpolation, where cells are not ohmic). They leave out the selected cell, and lag behind by
+stress that is not settled yet.
 """
 
 from __future__ import annotations
@@ -12,14 +13,19 @@ from programming.slots import conductance, mean_conductance
 
 
 def sum_at(plan, sums, line, voltage):
-    """Sum of the conductances of a line at a voltage [S]: interpolated between nodes, unless the cells are ohmic."""
-    nodes = plan.node_voltages.shape[0]
-    if nodes == 1:
+    """Sum of the conductances of a line at a voltage [S]: cubic between its nodes, unless the cells are ohmic."""
+    points = plan.node_voltages.shape[0] - 1
+    if points == 0:
         return sums[line, 0]
     place = (voltage - plan.node_voltages[1]) / (plan.node_voltages[2] - plan.node_voltages[1])
-    left = min(max(int(place), 0), nodes - 3)
-    share = place - left
-    return (1.0 - share) * sums[line, left + 1] + share * sums[line, left + 2]
+    first = min(max(int(place) - 1, 0), points - 4)
+    t = place - first
+    return (
+        -(t - 1.0) * (t - 2.0) * (t - 3.0) / 6.0 * sums[line, first + 1]
+        + t * (t - 2.0) * (t - 3.0) / 2.0 * sums[line, first + 2]
+        - t * (t - 1.0) * (t - 3.0) / 2.0 * sums[line, first + 3]
+        + t * (t - 1.0) * (t - 2.0) / 6.0 * sums[line, first + 4]
+    )
 
 
 def change_sums(plan, die, p, cell_state, row, column, sign):
