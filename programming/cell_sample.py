@@ -40,24 +40,13 @@ def spread_arrays(job: Job) -> tuple[npt.NDArray[np.int64], npt.NDArray[np.int64
     )
 
 
-def sampled_doses(job: Job, voltages: Floats, widths: Floats, count: int) -> Floats:
-    """(count, pulses) signed doses of pulses on `count` healthy cells drawn from the job's spreads.
+def sampled_cells(job: Job, voltages: Floats, widths: Floats, count: int, ranges: bool = False) -> tuple[Floats, Floats]:
+    """What `count` healthy cells drawn from the job's spreads are like: (count, pulses) signed doses, and their ranges.
 
-    voltages: signed, across the cell [V]; widths [s]. The sample belongs to no die.
+    voltages: signed, across the cell [V]; widths [s]. The ranges are (count, 3): lowest and highest conductance [S] and unit
+    dose (see nominal_cell), or empty if not asked for. The sample belongs to no die.
     """
-    out = np.empty((count, len(voltages)))
-    varied, law, size = spread_arrays(job)
-    fuse(job.cell.model, job.strategy).sample_doses(
-        base_values(job),
-        varied,
-        law,
-        size,
-        float(job.cell.truncation),
-        np.ascontiguousarray(voltages, dtype=np.float64),
-        np.ascontiguousarray(widths, dtype=np.float64),
-        out,
-    )
-    return out
+    return _sample(job, spread_arrays(job), voltages, widths, count, count if ranges else 0)
 
 
 def nominal_cell(job: Job) -> tuple[float, float, float]:
@@ -65,7 +54,24 @@ def nominal_cell(job: Job) -> tuple[float, float, float]:
 
     The unit dose moves it from mid-range by 1 - 1/e of the way to an end, the smaller of both directions.
     """
-    return fuse(job.cell.model, job.strategy).nominal_cell(base_values(job), float(job.verify.voltage_V))
+    none = np.empty(0)
+    lowest, highest, unit = _sample(job, (none.astype(np.int64), none.astype(np.int64), none), none, none, 1, 1)[1][0]
+    return float(lowest), float(highest), float(unit)
+
+
+def _sample(job: Job, spreads: Any, voltages: Floats, widths: Floats, count: int, ranges: int) -> tuple[Floats, Floats]:
+    out = np.empty((count, len(voltages))), np.empty((ranges, 3))
+    fuse(job.cell.model, job.strategy).sample_cells(
+        base_values(job),
+        *spreads,
+        float(job.cell.truncation),
+        np.ascontiguousarray(voltages, dtype=np.float64),
+        np.ascontiguousarray(widths, dtype=np.float64),
+        out[0],
+        float(job.verify.voltage_V),
+        out[1],
+    )
+    return out
 
 
 def device_fields(job: Job) -> dict[str, Any]:

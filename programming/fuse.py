@@ -27,13 +27,11 @@ from programming.strategy_contract import CellStrategy
 class Fused(NamedTuple):
     """The compiled functions of one model and one strategy. Each is compiled, or loaded, at its first call.
 
-    program_die(plan, die, rules, die_number): see programming.die_loop. sample_doses, nominal_cell: see
-    programming.calibration.
+    program_die(plan, die, rules, die_number): see programming.die_loop. sample_cells: see programming.calibration.
     """
 
     program_die: Callable[..., None]
-    sample_doses: Callable[..., None]
-    nominal_cell: Callable[..., tuple[float, float, float]]
+    sample_cells: Callable[..., None]
 
 
 _ENTRY = '''"""Generated: one model, one strategy and the programming loop, compiled together. Safe to delete."""
@@ -44,12 +42,8 @@ def program_die(plan, die, rules, die_number):
     loop(plan, die, rules, die_number)
 
 
-def sample_doses(base_values, varied, law, size, truncation, voltages, widths, out):
-    sample(base_values, varied, law, size, truncation, voltages, widths, out)
-
-
-def nominal_cell(base_values, voltage):
-    return nominal(base_values, voltage)
+def sample_cells(base_values, varied, law, size, truncation, voltages, widths, doses, read_voltage, ranges):
+    sample(base_values, varied, law, size, truncation, voltages, widths, doses, read_voltage, ranges)
 '''
 # The loop is inlined into one function, so that records of arrays are taken apart once, not copied at each call; and it
 # is compiled without reference counting (it allocates nothing), which would otherwise be most of its time.
@@ -86,8 +80,7 @@ def _digest(fillings: dict[str, Any]) -> str:
     """What the loop with these fillings is called in the cache."""
     parts = {
         "loop": die_loop.program_die,
-        "sample": calibration.sample_doses,
-        "nominal": calibration.nominal_cell,
+        "sample": calibration.sample_cells,
         "draw_faults": _draw_faults,
         "composer": fill_slots.__code__,
     }
@@ -169,8 +162,7 @@ def _compile(digest: str, fillings: dict[str, Any]) -> Fused:
     # numba looks the module up by name when it loads the compiled code: it must be one that can be imported
     names: dict[str, Any] = {
         "loop": fill_slots(die_loop.program_die, fillings),
-        "sample": fill_slots(calibration.sample_doses, fillings, _ENTRY_OPTIONS),
-        "nominal": fill_slots(calibration.nominal_cell, fillings, _ENTRY_OPTIONS),
+        "sample": fill_slots(calibration.sample_cells, fillings, _ENTRY_OPTIONS),
         "draw_faults": _draw_faults,
         "__name__": __name__,
     }

@@ -96,7 +96,12 @@ class Plan(NamedTuple):
     verifies: int
     # stuck test
     stuck_limit: float  # z: how many standard deviations of a difference of readings still look like no movement
-    slow_dose: np.ndarray  # (bins,) dose that all but the slowest allowed share of healthy cells would get
+    slow_dose: np.ndarray  # (bins,) dose of the nominal cell that does what the pulse does to a slow healthy cell
+    slow_low: float  # [S] readings that a healthy cell of the narrowest range can reach for sure, at the low end
+    slow_high: float  # and at the high end
+    nominal_low: float  # [S] range of the nominal cell
+    nominal_high: float
+    unseen_high: float  # [S] what a cell at its high end may read, had the converter no end
     # order of mixed stress
     history: int  # 0: only one polarity disturbs, no record kept
     reference_dose: np.ndarray  # (3, bins) size of the dose of a weak cell per pulse, by class

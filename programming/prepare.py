@@ -2,18 +2,17 @@
 
 from __future__ import annotations
 
-import math
 from typing import Any
 
 import numpy as np
 import numpy.typing as npt
-from scipy.special import ndtri
 
-from programming.cell_sample import device_fields, log_sigma, nominal_cell, sampled_doses
+from programming.cell_sample import device_fields, nominal_cell, sampled_cells
 from programming.job import Job
 from programming.plan import Plan
 from programming.pulse_grid import pulse_fields
 from programming.strategy_contract import Rules
+from programming.stuck_limits import stuck_test_fields
 from programming.verify_noise import reading_deviation, verify_fields
 
 Floats = npt.NDArray[np.float64]
@@ -24,25 +23,10 @@ _RECORD_STEP = 0.08  # unit doses of such a cell in one record
 _SAMPLE = 1024
 
 
-def _slow_doses(job: Job, pulses: dict[str, Any]) -> Floats:
-    """Per bin, the dose that all but half the allowed false-alarm share of healthy cells exceed, cycle noise included."""
-    share = 0.5 * job.stuck_false_alarm
-    if share <= 0.0:
-        return np.zeros(pulses["bin_voltage"].size)
-    count = int(min(max(8.0 / share, 256.0), 16384.0))
-    drawn = sampled_doses(job, pulses["bin_voltage"], pulses["bin_width"], count)
-    slow = np.sign(drawn.sum(axis=0)) * np.quantile(np.abs(drawn), share, axis=0, method="lower")
-    if job.cell.cycle is None:
-        return np.asarray(slow)
-    if job.cell.cycle.law == "normal":
-        return np.asarray(slow * max(0.0, 1.0 + job.cell.cycle.relative * float(ndtri(share))))
-    return np.asarray(slow * math.exp(log_sigma(job.cell.cycle.relative) * float(ndtri(share))))
-
-
 def _reference_doses(job: Job, pulses: dict[str, Any]) -> tuple[Floats, bool]:
     """(3, bins) size of a weak cell's dose per pulse by class, and whether stress of both signs occurs."""
     fractions = (job.bias.same_row, job.bias.same_column, job.bias.rest)
-    drawn = np.array([sampled_doses(job, f * pulses["bin_voltage"], pulses["bin_width"], _SAMPLE) for f in fractions])
+    drawn = np.array([sampled_cells(job, f * pulses["bin_voltage"], pulses["bin_width"], _SAMPLE)[0] for f in fractions])
     both = bool((drawn > 0.0).any() and (drawn < 0.0).any())
     return np.quantile(np.abs(drawn), _WEAK_CELL, axis=1), both
 
@@ -67,7 +51,7 @@ def _stress_fields(job: Job, pulses: dict[str, Any]) -> dict[str, Any]:
     }
 
 
-def _controller_fields(job: Job, pulses: dict[str, Any]) -> dict[str, Any]:
+def _controller_fields(job: Job) -> dict[str, Any]:
     targets = job.targets
     matrix = np.empty(0) if targets.matrix_S is None else targets.matrix_S
     return {
@@ -80,8 +64,6 @@ def _controller_fields(job: Job, pulses: dict[str, Any]) -> dict[str, Any]:
         "tolerance_fraction": float(job.tolerance_fraction),
         "max_pulses": int(job.max_pulses),
         "passes": int(job.passes),
-        "stuck_limit": float(-ndtri(0.5 * job.stuck_false_alarm)) if job.stuck_false_alarm > 0.0 else 0.0,
-        "slow_dose": _slow_doses(job, pulses),
     }
 
 
@@ -96,7 +78,8 @@ def make_plan(job: Job) -> Plan:
         **device_fields(job),
         **verify_fields(job),
         **_stress_fields(job, pulses),
-        **_controller_fields(job, pulses),
+        **_controller_fields(job),
+        **stuck_test_fields(job, pulses),
     }
     return Plan(**{name: fields[name] for name in Plan._fields})
 

@@ -84,9 +84,8 @@ def program_cell(plan, die, rules, p, nominal, die_number, cell, row, column, to
     die.memory[:] = 0.0
     reading = read_cell(plan, die, p, die_number, cell, row, column) if plan.verifies != 0 else math.nan
     first = reading
-    hidden = hidden_change(plan, first)
-    evidence = 0.0
-    given = 0
+    hidden = evidence = 0.0
+    run, given = -1, 0
     spare_reads = 64 * plan.max_pulses
     status = GAVE_UP
     while True:
@@ -106,17 +105,16 @@ def program_cell(plan, die, rules, p, nominal, die_number, cell, row, column, to
         index = nearest(plan.amplitudes, a_first, a_end, plan.amplitude_spacing[direction], amplitude)
         width_index = nearest(plan.widths, w_first, w_end, plan.width_spacing[direction], width)
         bin_ = plan.bin_first[direction] + (index - a_first) * (w_end - w_first) + width_index - w_first
+        if direction != run:
+            run, first, evidence = direction, reading, 0.0
+            hidden = hidden_change(plan, first)
         give_pulse(plan, die, p, die_number, cell, row, column, direction, index, width_index, bin_)
         totals = add_own_pulse(plan, die, totals, direction, index, plan.widths[width_index])
         given += 1
         if plan.verifies == 0:
             continue
         reading = read_cell(plan, die, p, die_number, cell, row, column)
-        slow = plan.slow_dose[bin_]
-        if slow * evidence < 0.0:
-            evidence, first = 0.0, reading
-            hidden = hidden_change(plan, first)
-        evidence += slow
+        evidence += plan.slow_dose[bin_]
         if looks_stuck(plan, nominal, first, reading, hidden, evidence):
             status = STUCK
             break
