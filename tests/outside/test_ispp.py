@@ -1,4 +1,4 @@
-"""Incremental-step programming, pulse counts and redraw write-verify: the real loop against closed forms.
+"""Incremental-step programming and pulse counts: the real loop against closed forms.
 
 The cells and the one-sided strategy are a user's own file (plugin_cells.py). x is the state of a cell, D the mean step.
 Sampled laws are held to 4 standard errors of the sample at hand; seeds are fixed.
@@ -29,40 +29,13 @@ from tests.outside.plugin_jobs import (
     starting_at,
     step_targets,
 )
-from tests.twins import plain_random
+from tests.outside.standard_errors import agrees, deviation_of, mean_of, standard_errors, variance_of
 
 DIES = 256  # of 64 x 64 cells
 
 
 def approx(value, rel=1e-9):
     return pytest.approx(value, rel=rel, abs=0)
-
-
-def mean_of(values):
-    """Mean and its standard error."""
-    return values.mean(), values.std() / sqrt(values.size)
-
-
-def variance_of(values):
-    """Variance and its standard error, from the fourth moment of the sample."""
-    square = (values - values.mean()) ** 2
-    return square.mean(), square.std() / sqrt(values.size)
-
-
-def deviation_of(values):
-    """Standard deviation and its standard error."""
-    variance, error = variance_of(values)
-    return sqrt(variance), error / (2.0 * sqrt(variance))
-
-
-def standard_errors(estimate, expected):
-    """How many standard errors an estimate is away from a value."""
-    value, error = estimate
-    return abs(value - expected) / error
-
-
-def agrees(estimate, expected):
-    return standard_errors(estimate, expected) < 4.0
 
 
 # ---- the cells themselves
@@ -273,62 +246,3 @@ def test_signed_steps(mu, rho, count, dies):
     assert agrees(mean_of(result.overshoot * mu), rho)
     assert standard_errors(mean_of(result.overshoot * mu), 0.582597157939) > 4.0  # the limit mu -> 0
     assert standard_errors(mean_of(result.pulses), 20.0 / mu) > 8.0
-
-
-# ---- redraw write-verify: each pulse a fresh N(100, sp), accepted when the reading is within w of 100; derived
-
-SP, SV, W = 5.0, 1.0, 2.0
-TOTAL = sqrt(SP * SP + SV * SV)
-CHANCE = 2.0 * norm.cdf(W / TOTAL) - 1.0
-CUT = 1.0 - 2.0 * W / TOTAL * norm.pdf(W / TOTAL) / CHANCE  # variance of an accepted reading over that of any reading
-SHARE = SP * SP / TOTAL**2
-TRUE_SD = sqrt(SHARE * SV * SV + SHARE**2 * TOTAL**2 * CUT)
-
-
-@pytest.fixture(scope="module")
-def redraw():
-    noise, verify = read_noise(SV)
-    cell = {"initial_S": 1e-4, "initial_spread": 0.0, "cycle": relative_cycle("normal", SP / 100.0), "noise": noise}
-    a_job = plugin_job("redraw", cell=cell, verify=verify, targets=step_targets(100.0, 100.0), tolerance_S=W * 1e-10)
-    return a_job, sample(a_job, DIES)
-
-
-def test_redraw_tries(redraw):
-    tries = redraw[1].pulses
-    assert approx(0.305113398, rel=2e-9) == CHANCE
-    assert approx(3.27747, rel=2e-6) == 1.0 / CHANCE
-    assert agrees(mean_of(tries), 1.0 / CHANCE)
-    assert agrees(variance_of(tries), (1.0 - CHANCE) / CHANCE**2)
-    assert agrees(mean_of((tries == 1).astype(float)), CHANCE)
-    assert np.quantile(tries, 0.99, method="inverted_cdf") == 13
-    assert agrees(mean_of(tries.reshape(DIES, -1).max(axis=1)), 24.9366547)  # the slowest of 4096 cells
-
-
-def test_redraw_spread_is_scored_on_the_truth(redraw):
-    result = redraw[1]
-    assert approx(1.47281369, rel=4e-9) == TRUE_SD
-    assert agrees(deviation_of(result.overshoot), TRUE_SD)
-    assert agrees(mean_of(result.overshoot), 0.0)
-    outside = (np.abs(result.overshoot) > W).astype(float)
-    assert agrees(mean_of(outside), 0.181099236)
-    assert np.array_equal(outside == 0.0, result.in_band)
-
-
-def test_the_accepting_read_would_flatter(redraw):
-    """The accepting read of each cell, rebuilt by the twin of the random numbers, and one more read after it."""
-    a_job, result = redraw
-    count = 2 * 4096
-
-    def reading(cell, event):
-        z = plain_random.normal(a_job.seed, cell // 4096, cell % 4096, plain_random.READ, int(event), 0)
-        return result.overshoot[cell] + SV * z
-
-    accepting = np.array([reading(cell, result.verifies[cell] - 1) for cell in range(count)])
-    again = np.array([reading(cell, result.verifies[cell]) for cell in range(count)])
-    assert np.abs(accepting).max() <= W * (1.0 + 1e-5)  # none outside, where 18 % of the cells are
-    assert agrees(deviation_of(accepting), 1.14288463)
-    assert approx(1.14288463, rel=2e-9) == TOTAL * sqrt(CUT)
-    assert agrees(deviation_of(again), 1.78021914)
-    assert sqrt(TRUE_SD**2 + SV**2) == approx(1.78021914, rel=2e-9)
-    assert approx(0.224, rel=2e-3) == 1.0 - 1.14288463 / TRUE_SD
-    assert standard_errors(deviation_of(result.overshoot), 1.14288463) > 100.0
