@@ -2,13 +2,12 @@
 
 from __future__ import annotations
 
-from importlib import import_module
-from importlib.metadata import entry_points
 from typing import cast
 
+from device_models.named_plugins import NamedPlugins
 from programming.strategy_contract import CellStrategy
 
-# The one list of built-in strategies: name in a scenario -> "module:attribute". Loaded when asked for.
+# The one list of built-in strategies.
 BUILT_IN = {
     "open_loop": "programming.strategies.open_loop:STRATEGY",
     "identical_pulses": "programming.strategies.identical_pulses:STRATEGY",
@@ -16,21 +15,14 @@ BUILT_IN = {
     "width_staircase": "programming.strategies.width_staircase:STRATEGY",
 }
 ENTRY_POINT_GROUP = "pulsewright.strategies"
+_STRATEGIES = NamedPlugins(BUILT_IN, ENTRY_POINT_GROUP, CellStrategy)
 
 
 def strategy_names() -> list[str]:
     """Names of all strategies: built-in ones first, then those of installed packages."""
-    return [*BUILT_IN, *sorted(point.name for point in entry_points(group=ENTRY_POINT_GROUP))]
+    return _STRATEGIES.names()
 
 
 def load_strategy(name: str) -> CellStrategy:
     """The strategy of that name. Raises KeyError if there is none, TypeError if an entry point is something else."""
-    if name in BUILT_IN:
-        module, attribute = BUILT_IN[name].split(":")
-        return cast(CellStrategy, getattr(import_module(module), attribute))
-    for point in entry_points(group=ENTRY_POINT_GROUP, name=name):
-        strategy = point.load()
-        if not isinstance(strategy, CellStrategy):
-            raise TypeError(f"entry point {name!r} of {ENTRY_POINT_GROUP} is a {type(strategy).__name__}, not a CellStrategy")
-        return strategy
-    raise KeyError(name)
+    return cast(CellStrategy, _STRATEGIES.load(name))

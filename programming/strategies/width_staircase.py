@@ -8,21 +8,17 @@ is the train's `start`. Common practice, no source.
 from __future__ import annotations
 
 from device_models.compiled import compiled
+from programming.staircase import next_step
 from programming.strategy_contract import ACCEPT, RESET, SET, CellStrategy
 
 
 @compiled
 def decide(target, tolerance, reading, pulses, memory, rules):
-    """memory[0]: direction of the run; memory[1]: pulses given in it."""
+    """memory: see programming.staircase."""
     error = reading - target
     if abs(error) <= tolerance:
         return ACCEPT, 0.0, 0.0, 0.0
-    direction = SET if error < 0.0 else RESET
-    if direction != memory[0]:
-        memory[0] = direction
-        memory[1] = 0.0
-    step = memory[1]
-    memory[1] += 1.0
+    direction, step = next_step(error, memory)
     if direction == SET:
         return SET, rules.set_start, min(rules.set_width + step * rules.set_width_step, rules.set_width_stop), 0.0
     return RESET, rules.reset_start, min(rules.reset_width + step * rules.reset_width_step, rules.reset_width_stop), 0.0
