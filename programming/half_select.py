@@ -137,13 +137,15 @@ def settle(plan, die, p, die_number, cell, row, column, visit_pass, totals):
         down = 0.0
     if (up == 0.0 and down == 0.0) or die.fault[cell] != 0:
         return
-    scale_up = noisy_stress(plan, die_number, cell, visit_pass, 0, up, square_up - die.cells[cell, SQUARE_UP])
-    scale_down = noisy_stress(plan, die_number, cell, visit_pass, 1, down, square_down - die.cells[cell, SQUARE_DOWN])
+    noisy_up = noisy_stress(plan, die_number, cell, visit_pass, 0, up, square_up - die.cells[cell, SQUARE_UP])
+    noisy_down = noisy_stress(plan, die_number, cell, visit_pass, 1, down, square_down - die.cells[cell, SQUARE_DOWN])
     before = die.cells[cell, STATE]
-    if up > 0.0 and down > 0.0 and plan.history != 0 and up + down > plan.history_step * plan.unit_dose:
-        after = replay(plan, die, p, cell, row, column, totals, up, down, scale_up / up, scale_down / down)
+    if noisy_up > 0.0 and noisy_down > 0.0 and plan.history != 0 and up + down > plan.history_step * plan.unit_dose:
+        after = replay(plan, die, p, cell, row, column, totals, up, down, noisy_up / up, noisy_down / down)
     else:
-        after = advance_mixed(before, scale_up, scale_down, p)
+        # a few pulses of normal noise may come out below zero: a dose the other way
+        rising = max(noisy_up, 0.0) + max(-noisy_down, 0.0)
+        after = advance_mixed(before, rising, max(noisy_down, 0.0) + max(-noisy_up, 0.0), p)
     die.cells[cell, STATE] = after
     change = conductance(after, plan.read_voltage, p) - conductance(before, plan.read_voltage, p)
     die.total[1] += abs(change) * (die.counter[0] - np.int64(die.settled_at[cell]))

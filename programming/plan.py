@@ -48,8 +48,8 @@ class Plan(NamedTuple):
     bin_amplitude: np.ndarray  # (bins,) place of each bin's amplitude
     bin_width: np.ndarray  # (bins,) [s]
     mirrored: int  # 1: the rest sees in each direction what the rows see in the other
-    amplitude_spacing: np.ndarray  # (2,) [V]
-    width_spacing: np.ndarray  # (2,) [s]
+    amplitude_steps: np.ndarray  # (2, 3) [V] first and last value and spacing of each direction's grid, before rounding
+    width_steps: np.ndarray  # (2, 3) [s]
     overhead: np.ndarray  # (2,) [s] edges and pause around each pulse
     # device
     base_values: np.ndarray  # (parameters,) [SI]

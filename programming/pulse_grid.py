@@ -16,6 +16,7 @@ from programming.job import Job, PulseTrain
 from programming.strategy_contract import CellStrategy
 
 Floats = npt.NDArray[np.float64]
+Steps = tuple[float, float, float]  # first value, last value, spacing; before any rounding
 
 
 def staircase_values(start: float, step: float, stop: float) -> Floats:
@@ -29,19 +30,21 @@ def staircase_values(start: float, step: float, stop: float) -> Floats:
     return np.asarray(np.minimum(values, stop))
 
 
-def amplitude_grid(train: PulseTrain, strategy: CellStrategy, resolution: float) -> tuple[Floats, float]:
-    """Amplitudes [V] the strategy can ask for in one direction, and the spacing [V] by which they are looked up."""
+def amplitude_grid(train: PulseTrain, strategy: CellStrategy, resolution: float) -> tuple[Floats, Steps]:
+    """Amplitudes [V] the generator gives when the strategy goes through its grid, and the steps of that grid."""
     spacing = {"one": 0.0, "staircase": train.step, "any": resolution}[strategy.amplitudes]
     values = staircase_values(train.start, spacing, train.stop)
+    steps = (float(values[0]), float(values[-1]), spacing)
     if resolution > 0.0:
         values = np.round(values / resolution) * resolution
-    return values, spacing
+    return values, steps
 
 
-def width_grid(train: PulseTrain, strategy: CellStrategy) -> tuple[Floats, float]:
-    """Widths [s] the strategy can ask for in one direction, and the spacing [s] by which they are looked up."""
+def width_grid(train: PulseTrain, strategy: CellStrategy) -> tuple[Floats, Steps]:
+    """Widths [s] the strategy can ask for in one direction, and the steps of their grid."""
     spacing = train.width_step if strategy.widths == "staircase" else 0.0
-    return staircase_values(train.width, spacing, train.width_stop), spacing
+    values = staircase_values(train.width, spacing, train.width_stop)
+    return values, (float(values[0]), float(values[-1]), spacing)
 
 
 def class_fractions(job: Job) -> dict[str, float]:
@@ -54,14 +57,14 @@ def class_fractions(job: Job) -> dict[str, float]:
 
 def pulse_fields(job: Job) -> dict[str, Any]:
     """The fields of a plan that describe the pulses, and (more than a plan holds) the voltage of every ledger bin [V]."""
-    amplitudes, widths, spacings, width_spacings = [], [], [], []
+    amplitudes, widths, amplitude_steps, width_steps = [], [], [], []
     for train in (job.set, job.reset):
-        values, spacing = amplitude_grid(train, job.strategy, job.resolution)
-        times, width_spacing = width_grid(train, job.strategy)
+        values, steps = amplitude_grid(train, job.strategy, job.resolution)
+        times, time_steps = width_grid(train, job.strategy)
         amplitudes.append(values)
         widths.append(times)
-        spacings.append(spacing)
-        width_spacings.append(width_spacing)
+        amplitude_steps.append(steps)
+        width_steps.append(time_steps)
     fractions = class_fractions(job)
     sign = np.array([1.0, -1.0]) * job.cell.model.set_polarity
     bins = [a.size * w.size for a, w in zip(amplitudes, widths, strict=True)]
@@ -75,8 +78,8 @@ def pulse_fields(job: Job) -> dict[str, Any]:
         "amplitude_first": np.array([0, amplitudes[0].size, amplitudes[0].size + amplitudes[1].size]),
         "width_first": np.array([0, widths[0].size, widths[0].size + widths[1].size]),
         "bin_first": np.array([0, bins[0], bins[0] + bins[1]]),
-        "amplitude_spacing": np.array(spacings),
-        "width_spacing": np.array(width_spacings),
+        "amplitude_steps": np.array(amplitude_steps),
+        "width_steps": np.array(width_steps),
         "cell_sign": sign,
         "bin_voltage": np.concatenate([np.repeat(a * s, w.size) for a, w, s in zip(amplitudes, widths, sign, strict=True)]),
         "bin_amplitude": np.concatenate(

@@ -12,7 +12,12 @@ from device_models.read_noise import telegraph_next
 from programming.plan import STATE, VERIFY
 from programming.slots import conductance
 
-_SHARED_DRAW = 63  # sub-draw of what all reads of one verify have in common; below it, one for each read
+_SHARED_DRAW = 1 << 23  # sub-draw of what all reads of one verify have in common; far above those of the reads
+
+
+def sub_draw(read):
+    """Sub-draw of a read of a verify. A normal's second looks step by 64 (see random_numbers): they get room for 63."""
+    return (read & 63) + ((read >> 6) << 12)
 
 
 def read_cell(plan, die, p, die_number, cell, row, column):
@@ -32,8 +37,9 @@ def read_cell(plan, die, p, die_number, cell, row, column):
     total = 0.0
     high = False
     for read in range(plan.reads):
-        word, other = keyed_words(plan.seed, die_number, cell, READ, event, read)
-        reading = true + shared + deviation * normal_of_word(word, plan.seed, die_number, cell, READ, event, read)
+        draw = sub_draw(read)
+        word, other = keyed_words(plan.seed, die_number, cell, READ, event, draw)
+        reading = true + shared + deviation * normal_of_word(word, plan.seed, die_number, cell, READ, event, draw)
         if plan.telegraph > 0.0:
             correlation = plan.telegraph_correlation if read > 0 else 0.0
             high = telegraph_next(high, plan.telegraph_high, correlation, unit_interval(other))

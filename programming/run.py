@@ -5,7 +5,7 @@ from __future__ import annotations
 import threading
 from collections import deque
 from collections.abc import Callable, Iterator
-from concurrent.futures import Future, ThreadPoolExecutor
+from concurrent.futures import CancelledError, Future, ThreadPoolExecutor
 from typing import TypeVar
 
 import numpy as np
@@ -40,6 +40,8 @@ def program_dies(job: Job, dies: int, workers: int, reduce: Callable[[DieOutcome
             own.die.order[:] = ORDERS[job.order](job.rows, job.columns, job.seed, die_number)
         clear_die(own.die, plan)
         loop(plan, own.die, rules, die_number)
+        if stop[0] != 0:
+            raise CancelledError  # half done, and nobody waits for it
         return reduce(_outcome(own.die, die_number))
 
     pool = ThreadPoolExecutor(max_workers=workers, thread_name_prefix="die")

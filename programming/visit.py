@@ -35,13 +35,17 @@ def noisy_dose(plan, die_number, cell, event, dose):
     return dose * math.exp(plan.cycle_sigma * z - 0.5 * plan.cycle_sigma * plan.cycle_sigma)
 
 
-def nearest(values, first, end, spacing, wanted):
-    """Index of the grid value that a wanted magnitude is rounded to; the last value need not lie on the even grid."""
-    if spacing <= 0.0 or not wanted > values[first]:
+def nearest(steps, direction, first, end, wanted):
+    """Index (from `first` on, below `end`) of the grid value that a wanted magnitude is rounded to.
+
+    steps: see Plan. The last value of a grid need not lie on its even steps.
+    """
+    start, stop, spacing = steps[direction, 0], steps[direction, 1], steps[direction, 2]
+    if spacing <= 0.0 or not wanted > start:
         return first
-    if wanted >= values[end - 1]:
+    if wanted >= stop:
         return end - 1
-    return min(first + int((wanted - values[first]) / spacing + 0.5), end - 1)
+    return min(first + int((wanted - start) / spacing + 0.5), end - 1)
 
 
 def give_pulse(plan, die, p, die_number, cell, row, column, direction, index, width_index, bin_):
@@ -102,8 +106,8 @@ def program_cell(plan, die, rules, p, nominal, die_number, cell, row, column, to
         direction = 0 if action == SET else 1
         a_first, a_end = plan.amplitude_first[direction], plan.amplitude_first[direction + 1]
         w_first, w_end = plan.width_first[direction], plan.width_first[direction + 1]
-        index = nearest(plan.amplitudes, a_first, a_end, plan.amplitude_spacing[direction], amplitude)
-        width_index = nearest(plan.widths, w_first, w_end, plan.width_spacing[direction], width)
+        index = nearest(plan.amplitude_steps, direction, a_first, a_end, amplitude)
+        width_index = nearest(plan.width_steps, direction, w_first, w_end, width)
         bin_ = plan.bin_first[direction] + (index - a_first) * (w_end - w_first) + width_index - w_first
         if direction != run:
             run, first, evidence = direction, reading, 0.0
