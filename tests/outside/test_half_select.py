@@ -20,6 +20,7 @@ from device_models.windows import NONE
 from programming.bias import SCHEMES, BiasScheme
 from programming.job import PulseTrain, Targets
 from programming.run import program_dies
+from programming.strategy_contract import RESET, SET
 from tests.jobs import NO_NOISE, cell_of, job, quiet_verify
 from tests.outside.plugin_jobs import plugin_job, step_targets
 
@@ -228,23 +229,28 @@ HIGH, P = 3.0, 10  # pulse voltage [V]; pulses per cell
 THRESHOLD, SPEED, SPAN = 0.9, 1.35e-7, 3e-9  # dx/dt = k (|v| / threshold - 1); in 100 ns at 1 V 5e-7 of the span
 
 
-def step_at(voltage, speed=SPEED):
+def step_at(voltage):
     """Change of x [m] by one pulse, without window."""
-    return speed * (voltage / THRESHOLD - 1.0) * WIDTH if voltage > THRESHOLD else 0.0
+    return SPEED * (voltage / THRESHOLD - 1.0) * WIDTH if voltage > THRESHOLD else 0.0
 
 
-def moved(name, passes=1, down=1.0, rows=64, columns=64):
-    """Run an array of cells that only count: x moved by each cell towards low resistance [m], and the outcome's arrays."""
+def moved(name, passes=1, back=1.0, rows=64, columns=64, direction=SET):
+    """Run an array of cells that only count: way of each cell in the direction of its pulses [m], and the outcome's arrays.
+
+    back: speed against that direction over the speed along it.
+    """
     values = {"R_on": 1e4, "R_off": 1e6, "x_on": 0.0, "x_off": SPAN, "v_on": -THRESHOLD, "v_off": THRESHOLD}
-    values |= {"k_on": -SPEED, "k_off": down * SPEED, "alpha_on": 1.0, "alpha_off": 1.0, "window": NONE}
-    values["law"] = LINEAR_CONDUCTANCE
+    values |= {"k_on": -SPEED * (1.0 if direction == SET else back), "k_off": SPEED * (back if direction == SET else 1.0)}
+    values |= {"alpha_on": 1.0, "alpha_off": 1.0, "window": NONE, "law": LINEAR_CONDUCTANCE}
     train = PulseTrain(HIGH, 0.0, HIGH, WIDTH)
-    settings = {"cell": {"overrides": values, "initial_S": 50e-6}, "set": train, "reset": train}
+    target = 90e-6 if direction == SET else 10e-6
+    settings = {"set": train, "reset": train, "targets": Targets("levels", target, target, np.array([target]))}
+    settings["cell"] = {"overrides": values, "initial_S": 50e-6}
     a_job = idle_job(rows, columns, SCHEMES[name], max_pulses=P // passes, passes=passes, **settings)
 
     def keep(outcome):
         assert (outcome.pulses == P).all()
-        to_metres = SPAN / (100e-6 - 1e-6)
+        to_metres = direction * SPAN / (100e-6 - 1e-6)
         return (outcome.final_S - 50e-6) * to_metres, outcome.disturbance_S * to_metres, outcome.dose_share.copy()
 
     return next(program_dies(a_job, 1, 1, keep))
@@ -256,9 +262,10 @@ def moved(name, passes=1, down=1.0, rows=64, columns=64):
     [("V/2", 1260, 0), ("V/3", 1260, 39690), ("grounded", 630, 0)],
 )
 @pytest.mark.parametrize("passes", [1, 2])
-def test_disturb_dose_of_an_array_programmed_once(name, half, reversed_half, passes):
+@pytest.mark.parametrize("direction", [SET, RESET])
+def test_disturb_dose_of_an_array_programmed_once(name, half, reversed_half, passes, direction):
     seen = {"V/2": HIGH / 2, "V/3": HIGH / 3, "grounded": HIGH}[name]
-    strong, weak = (moved(name, passes, down)[0] for down in (1.0, 0.25))
+    strong, weak = (moved(name, passes, ratio, direction=direction)[0] for ratio in (1.0, 0.25))
     back = (weak - strong) / (0.75 * step_at(HIGH / 3))
     forth = (strong - P * step_at(HIGH)) / step_at(seen) + back
     np.testing.assert_allclose(forth, half, rtol=1e-8, atol=0)
@@ -269,12 +276,13 @@ def test_disturb_dose_of_an_array_programmed_once(name, half, reversed_half, pas
         assert not back.any()
 
 
+@pytest.mark.parametrize("direction", [SET, RESET])
 @pytest.mark.parametrize("name", ["V/2", "V/3"])
-def test_disturbance_counts_from_the_last_own_pulse(name):
+def test_disturbance_counts_from_the_last_own_pulse(name, direction):
     """Programmed row by row, a cell is disturbed by the pulses on the cells after it: their number by class is known."""
     M, N = 20, 32
     seen = {"V/2": HIGH / 2, "V/3": HIGH / 3}[name]
-    _, disturbance, share = moved(name, rows=M, columns=N)
+    _, disturbance, share = moved(name, rows=M, columns=N, direction=direction)
     row, column = np.divmod(np.arange(M * N), N)
     same_row, same_column = (N - 1 - column) * P, (M - 1 - row) * P
     rest = (M * N - 1 - np.arange(M * N)) * P - same_row - same_column
