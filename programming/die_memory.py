@@ -38,7 +38,7 @@ def make_die(job: Job, plan: Plan, order: npt.NDArray[np.int32], stop: npt.NDArr
         memory=np.zeros(max(job.strategy.memory, 1)),
         values=np.zeros(plan.base_values.size),
         energy=np.zeros(6),
-        total=np.zeros(2),
+        total=np.zeros(3),
         counter=np.zeros(1, dtype=np.int64),
         line_open=np.zeros((lines, 4)),
         line_sum=np.zeros((lines, 4)),

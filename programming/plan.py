@@ -132,7 +132,8 @@ class Die(NamedTuple):
     memory: np.ndarray  # scratch of the strategy
     values: np.ndarray  # scratch: parameters of the visited cell
     energy: np.ndarray  # (6,) [J]
-    total: np.ndarray  # (2,) time [s]; sizes of settled conductance changes times the pulses they waited [S]
+    # (3,) time [s]; sizes of settled conductance changes times the pulses they waited [S]; cells out of band by disturbance
+    total: np.ndarray
     counter: np.ndarray  # (1,) int64: number of pulses so far on the die
     # recent stress in order, in reference doses, per line (rows, then columns) and for the whole array; columns: up, down,
     # and for lines what the same pulses would be to cells of the rest, up, down

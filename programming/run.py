@@ -12,7 +12,7 @@ import numpy as np
 
 from programming.die_memory import clear_die, make_die
 from programming.fuse import fuse
-from programming.job import ENERGY_PARTS, NOT_ADDRESSED, STUCK, DieOutcome, Job
+from programming.job import ENERGY_PARTS, NOT_ADDRESSED, DieOutcome, Job
 from programming.orders import ORDERS
 from programming.plan import DISTURBANCE_S, FINAL_S, OWN_REST, OWN_ROW, Die
 from programming.prepare import make_plan, make_rules
@@ -60,18 +60,15 @@ def program_dies(job: Job, dies: int, workers: int, reduce: Callable[[DieOutcome
 
 def _outcome(die: Die, die_number: int) -> DieOutcome:
     """The results of a finished die as views into the worker's memory."""
-    addressed = die.status != NOT_ADDRESSED
-    disturbance = die.cells[:, DISTURBANCE_S]
     final = die.cells[:, FINAL_S]
-    moved_out = (np.abs(disturbance) > np.abs(final - disturbance - die.target)) & addressed & (die.status != STUCK)
-    moved_out &= ~die.in_band
     seen = float(final.sum()) * max(int(die.counter[0]), 1)
     assert len(ENERGY_PARTS) == die.energy.size
+    assert NOT_ADDRESSED == 0
     return DieOutcome(
         die=die_number,
         target_S=die.target,
         final_S=final,
-        disturbance_S=disturbance,
+        disturbance_S=die.cells[:, DISTURBANCE_S],
         pulses=die.pulses,
         verifies=die.verifies,
         status=die.status,
@@ -81,5 +78,5 @@ def _outcome(die: Die, die_number: int) -> DieOutcome:
         energy_J=die.energy,
         half_select_error=float(die.total[1]) / seen if seen > 0.0 else 0.0,
         time_s=float(die.total[0]),
-        stress_dominates=bool(moved_out.sum() > 0.1 * addressed.sum()),
+        stress_dominates=bool(die.total[2] > 0.1 * np.count_nonzero(die.status)),
     )

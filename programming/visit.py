@@ -148,7 +148,11 @@ def score_cell(plan, die, p, cell, totals):
     die.cells[cell, FINAL_S] = final
     die.cells[cell, DISTURBANCE_S] = final - own
     tolerance = max(plan.tolerance_S, plan.tolerance_fraction * die.target[cell])
-    die.in_band[cell] = abs(final - die.target[cell]) <= tolerance
+    error = final - die.target[cell]
+    die.in_band[cell] = abs(error) <= tolerance
+    programmed = die.status[cell] == ACCEPTED or die.status[cell] == GAVE_UP
+    if programmed and abs(error) > tolerance and abs(final - own) > abs(error - (final - own)):
+        die.total[2] += 1.0
 
 
 def visit(plan, die, rules, nominal, die_number, cell, visit_pass, score):
