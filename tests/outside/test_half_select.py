@@ -11,7 +11,7 @@ from math import log2
 
 import numpy as np
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from device_models.catalog import load_device
@@ -59,6 +59,7 @@ def check_classes(scheme, rows, columns, row, column):
 fractions = st.floats(0.0, 1.0)
 
 
+@settings(derandomize=True)
 @given(fractions, fractions, st.integers(1, 6), st.integers(1, 6), st.data())
 def test_any_point_of_the_plane(word, bit, rows, columns, data):
     row, column = data.draw(st.integers(0, rows - 1)), data.draw(st.integers(0, columns - 1))
