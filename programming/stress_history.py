@@ -96,6 +96,45 @@ def in_records(die, row, line, counts, ratios, polarity):
     )
 
 
+def next_record(die, row, line, row_n, col_n, all_n):
+    """(whose, place) of the oldest record not yet walked: 0 the row's, 1 the column's, 2 the array's."""
+    never = 1 << 62
+    row_place = (die.line_records[row] - row_n) % die.line_moment.shape[1]
+    col_place = (die.line_records[line] - col_n) % die.line_moment.shape[1]
+    all_place = (die.all_records[0] - all_n) % die.all_moment.shape[1]
+    row_moment = np.int64(die.line_moment[row, row_place]) if row_n > 0 else never
+    col_moment = np.int64(die.line_moment[line, col_place]) if col_n > 0 else never
+    all_moment = np.int64(die.all_moment[0, all_place]) if all_n > 0 else never
+    if min(row_moment, col_moment) > all_moment:
+        return 2, all_place
+    return (0, row_place) if row_moment <= col_moment else (1, col_place)
+
+
+def rest_correction(die, row, line, row_n, col_n, all_n):
+    """Factors (up, down) on the rest's records, so that their sum is right although they are walked one by one.
+
+    What a line's record takes out may exceed what the array's records have brought so far, and then stays owed at the end.
+    """
+    waiting_up = waiting_down = applied_up = applied_down = 0.0
+    while row_n + col_n + all_n > 0:
+        whose, place = next_record(die, row, line, row_n, col_n, all_n)
+        if whose < 2:
+            own = row if whose == 0 else line
+            waiting_up -= die.line_dose[own, place, 2]
+            waiting_down -= die.line_dose[own, place, 3]
+            row_n, col_n = row_n - (1 - whose), col_n - whose
+        else:
+            waiting_up += die.all_dose[0, place, 0]
+            waiting_down += die.all_dose[0, place, 1]
+            applied_up += max(waiting_up, 0.0)
+            applied_down += max(waiting_down, 0.0)
+            waiting_up, waiting_down = min(waiting_up, 0.0), min(waiting_down, 0.0)
+            all_n -= 1
+    up = (applied_up + waiting_up) / applied_up if applied_up > 0.0 else 1.0
+    down = (applied_down + waiting_down) / applied_down if applied_down > 0.0 else 1.0
+    return max(up, 0.0), max(down, 0.0)
+
+
 def replay(plan, die, p, cell, row, column, totals, up, down, noise_up, noise_down):
     """State of a cell after its unsettled doses `up` and `down`, the recent ones in order.
 
@@ -118,28 +157,24 @@ def replay(plan, die, p, cell, row, column, totals, up, down, noise_up, noise_do
     state = advance_mixed(die.cells[cell, STATE], older_up * noise_up, older_down * noise_down, p)
     scale_up *= noise_up
     scale_down *= noise_down
+    rest_up, rest_down = 0.0, 0.0
+    if all_n > 0:
+        rest_up, rest_down = rest_correction(die, row, line, row_n, col_n, all_n)
     waiting_up = waiting_down = 0.0
-    never = 1 << 62
-    while row_n > 0 or col_n > 0 or all_n > 0:
-        row_place = (die.line_records[row] - row_n) % die.line_moment.shape[1]
-        col_place = (die.line_records[line] - col_n) % die.line_moment.shape[1]
-        row_moment = np.int64(die.line_moment[row, row_place]) if row_n > 0 else never
-        col_moment = np.int64(die.line_moment[line, col_place]) if col_n > 0 else never
-        all_place = (die.all_records[0] - all_n) % die.all_moment.shape[1]
-        all_moment = np.int64(die.all_moment[0, all_place]) if all_n > 0 else never
-        if min(row_moment, col_moment) <= all_moment:
-            own_row = row_moment <= col_moment
-            own, place = (row, row_place) if own_row else (line, col_place)
-            dose_up = (ups[0] if own_row else ups[1]) * die.line_dose[own, place, 0]
-            dose_down = (downs[0] if own_row else downs[1]) * die.line_dose[own, place, 1]
+    while row_n + col_n + all_n > 0:
+        whose, place = next_record(die, row, line, row_n, col_n, all_n)
+        if whose < 2:
+            own = row if whose == 0 else line
+            dose_up = (ups[0] if whose == 0 else ups[1]) * die.line_dose[own, place, 0]
+            dose_down = (downs[0] if whose == 0 else downs[1]) * die.line_dose[own, place, 1]
             waiting_up -= die.line_dose[own, place, 2]
             waiting_down -= die.line_dose[own, place, 3]
-            row_n -= 1 if own_row else 0
-            col_n -= 0 if own_row else 1
+            row_n, col_n = row_n - (1 - whose), col_n - whose
         else:
-            waiting_up += die.all_dose[0, all_place, 0]
-            waiting_down += die.all_dose[0, all_place, 1]
-            dose_up, dose_down = ups[2] * max(waiting_up, 0.0), downs[2] * max(waiting_down, 0.0)
+            waiting_up += die.all_dose[0, place, 0]
+            waiting_down += die.all_dose[0, place, 1]
+            dose_up = rest_up * ups[2] * max(waiting_up, 0.0)
+            dose_down = rest_down * downs[2] * max(waiting_down, 0.0)
             waiting_up, waiting_down = min(waiting_up, 0.0), min(waiting_down, 0.0)
             all_n -= 1
         state = advance(state, 0.5 * scale_up * dose_up, p)
