@@ -65,9 +65,7 @@ def check_rate(model: DeviceModel, p: Any, kinetics_tolerance: float) -> None:
         rates = [float(model.rate(float(voltage), p)) for voltage in voltages]
         for voltage, rate in zip(voltages, rates, strict=True):
             _require(isfinite(rate), model, "rate", f"{rate} at {voltage:.4g} V")
-            _require(
-                rate * direction >= 0.0, model, "polarity", f"rate {rate:.4g} at {voltage:.4g} V has the wrong sign"
-            )
+            _require(rate * direction >= 0.0, model, "polarity", f"rate {rate:.4g} at {voltage:.4g} V has the wrong sign")
         for (smaller, larger), voltage in zip(pairwise(rates), voltages[1:], strict=True):
             grows = abs(larger) >= abs(smaller) * (1.0 - ROUNDING)
             _require(
@@ -82,9 +80,7 @@ def check_rate(model: DeviceModel, p: Any, kinetics_tolerance: float) -> None:
 def check_state(model: DeviceModel, p: Any, kinetics_tolerance: float) -> None:
     """state_of inverts conductance inside the range and clips outside; an ohmic cell has one conductance."""
     low, high = model.bounds(p)
-    _require(
-        0.0 < low < high and isfinite(high), model, "bounds", f"({low:.4g}, {high:.4g}) S must ascend from above 0"
-    )
+    _require(0.0 < low < high and isfinite(high), model, "bounds", f"({low:.4g}, {high:.4g}) S must ascend from above 0")
     for level in _levels(model, p):
         back = model.conductance(model.state_of(level, p), 1e-3, p)
         _require(_close(back, level, 1e-9), model, "state_of", f"{level:.6g} S comes back as {back:.6g} S")
@@ -107,15 +103,11 @@ def check_direction(model: DeviceModel, p: Any, kinetics_tolerance: float) -> No
             for sign in (1.0, -1.0):
                 after = model.conductance(model.advance(state, sign * size * dose, p), 0.1, p)
                 moved = sign * (after - before) >= -ROUNDING * before
-                _require(
-                    moved, model, "direction", f"dose {sign * size * dose:.4g} takes {before:.6g} S to {after:.6g} S"
-                )
+                _require(moved, model, "direction", f"dose {sign * size * dose:.4g} takes {before:.6g} S to {after:.6g} S")
                 kept = low * (1.0 - ROUNDING) <= after <= high * (1.0 + ROUNDING)
                 _require(kept, model, "bounds", f"dose {sign * size * dose:.4g} reaches {after:.6g} S")
         unmoved = model.conductance(model.advance(state, 0.0, p), 0.1, p)
-        _require(
-            _close(unmoved, before, ROUNDING), model, "direction", f"dose 0 takes {before:.9g} S to {unmoved:.9g} S"
-        )
+        _require(_close(unmoved, before, ROUNDING), model, "direction", f"dose 0 takes {before:.9g} S to {unmoved:.9g} S")
 
 
 def check_return(model: DeviceModel, p: Any, kinetics_tolerance: float) -> None:

@@ -17,9 +17,7 @@ TWIN = 1e-4
 def test_rate(variant):
     twin = CELLS[variant.model.name](variant.p._asdict())
     for voltage in np.linspace(-2.0, 2.0, 41):
-        assert variant.model.rate(float(voltage), variant.p) == pytest.approx(
-            twin.rate(float(voltage)), rel=1e-12, abs=0
-        )
+        assert variant.model.rate(float(voltage), variant.p) == pytest.approx(twin.rate(float(voltage)), rel=1e-12, abs=0)
 
 
 @pytest.mark.parametrize("variant", VARIANTS, ids=lambda v: v.label)

@@ -50,6 +50,4 @@ def test_order_of_dies_does_not_matter():
 
 def test_converter_is_that_of_the_plain_twin():
     for value in np.random.default_rng(3).uniform(-20e-6, 120e-6, 300):
-        assert convert(value, 100e-6 / 64, 63) == pytest.approx(
-            plain_faults.convert(value, 100e-6 / 64, 63), rel=1e-14, abs=0
-        )
+        assert convert(value, 100e-6 / 64, 63) == pytest.approx(plain_faults.convert(value, 100e-6 / 64, 63), rel=1e-14, abs=0)

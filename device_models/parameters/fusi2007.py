@@ -11,9 +11,7 @@ _LAW = "law of Fusi & Abbott, Nature Neurosci. 10:485 (2007), from memory"
 _ROUND = "stand-in: round illustrative value"
 # L k T / (gamma a0 q) with gamma = 16, a0 = 0.25 nm, L = 12 nm, T = 298.15 K: 77 mV
 _HOPPING_SCALE = 12e-9 * BOLTZMANN * 298.15 / (16.0 * 0.25e-9 * ELEMENTARY_CHARGE)
-_HOPPING = (
-    "Guan, Yu, Wong, IEEE Electron Device Lett. 33:1405 (2012), from memory: a0 0.25 nm, gamma 16, L 12 nm, 298 K"
-)
+_HOPPING = "Guan, Yu, Wong, IEEE Electron Device Lett. 33:1405 (2012), from memory: a0 0.25 nm, gamma 16, L 12 nm, 298 K"
 
 
 def fusi2007() -> ParameterSet:

@@ -277,15 +277,15 @@ def test_disturb_dose_of_an_array_programmed_once(name, half, reversed_half, pas
         assert not back.any()
 
 
-def test_disturb_dose_of_debts_so_large_that_their_order_is_replayed():
-    """Twenty times the step: debts of both signs of many unit doses are replayed pulse by pulse, and still sum up."""
-    faster = 20.0
-    strong, weak = (moved("V/3", back=ratio, speed=faster * SPEED)[0] for ratio in (1.0, 0.25))
+@pytest.mark.parametrize(("size", "faster"), [(8, 1500.0), (10, 1000.0)])
+@pytest.mark.parametrize("passes", [1, 2])
+def test_disturb_dose_of_debts_so_large_that_their_order_is_replayed(size, faster, passes):
+    """Steps so long that every line closes records of its own: replayed in order, the doses still sum up."""
+    strong, weak = (moved("V/3", passes, ratio, size, size, speed=faster * SPEED)[0] for ratio in (1.0, 0.25))
     back = (weak - strong) / (0.75 * faster * step_at(HIGH / 3))
     forth = (strong - P * faster * step_at(HIGH)) / (faster * step_at(HIGH / 3)) + back
-    # the records of recent doses are kept in single precision, and open ones (up to 0.02 unit doses) are not replayed
-    np.testing.assert_allclose(back, 39690, rtol=1e-6, atol=0)
-    np.testing.assert_allclose(forth, 1260, rtol=1e-4, atol=0)
+    np.testing.assert_allclose(back, (size - 1) ** 2 * P, rtol=1e-12, atol=0)
+    np.testing.assert_allclose(forth, 2 * (size - 1) * P, rtol=1e-12, atol=0)
 
 
 @pytest.mark.parametrize("direction", [SET, RESET])

@@ -99,9 +99,7 @@ def test_loop_is_odd_symmetric_and_pinched():
     ("frequency", "area"), [(1.0, -8.927705e-6), (2.0, -3.450833e-6), (10.0, -5.852082e-7), (100.0, -5.658805e-8)]
 )
 def test_lobe_area(frequency, area):
-    by_quadrature = quad(
-        lambda theta: sine_current(theta, frequency) * cos(theta), 0, pi, epsabs=0, epsrel=1e-10, limit=200
-    )[0]
+    by_quadrature = quad(lambda theta: sine_current(theta, frequency) * cos(theta), 0, pi, epsabs=0, epsrel=1e-10, limit=200)[0]
     assert by_quadrature == approx(area, rel=1e-6)
 
 

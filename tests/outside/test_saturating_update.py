@@ -93,9 +93,7 @@ def test_a_fraction_per_pulse_sets_the_shape():
     assert 1 / (rate(UP, CELL) * WIDTH) / 64 == approx(0.304620715, rel=3e-9)
 
 
-@pytest.mark.parametrize(
-    ("voltage", "half", "third"), [(1.0, 656.524319, 5707.01742), (2.0, 4.31022181e5, 3.25586338e7)]
-)
+@pytest.mark.parametrize(("voltage", "half", "third"), [(1.0, 656.524319, 5707.01742), (2.0, 4.31022181e5, 3.25586338e7)])
 def test_half_select_ratios_of_sinh_kinetics(voltage, half, third):
     # t(V/2)/t(V) = 2 cosh(A V/2), t(V/3)/t(V) = 1 + 2 cosh(2 A V/3), derived
     A = 1 / CELL.set_scale

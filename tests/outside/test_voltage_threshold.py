@@ -123,9 +123,9 @@ def test_trajectory_against_an_ode_library(kind, exponent, voltage):
 def test_energy_under_a_saturating_window_against_quadrature(law):
     p = CELL._replace(window=windows.DISTANCE_LEFT, law=law)
     for voltage in (0.9, -0.9):
-        dissipated = quad(
-            lambda t, v=voltage: v**2 * conductance(pulse(1e-9, v, t, p), v, p), 0, 5e-7, epsabs=0, epsrel=1e-11
-        )[0]
+        dissipated = quad(lambda t, v=voltage: v**2 * conductance(pulse(1e-9, v, t, p), v, p), 0, 5e-7, epsabs=0, epsrel=1e-11)[
+            0
+        ]
         assert energy(1e-9, voltage, 5e-7, p) == approx(dissipated, rel=1e-6)
 
 
