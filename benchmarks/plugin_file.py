@@ -7,6 +7,7 @@ theirs to put right, so every failure is a BadInputError with the file and the l
 from __future__ import annotations
 
 import hashlib
+import importlib
 import linecache
 import re
 import sys
@@ -27,11 +28,14 @@ Kind = TypeVar("Kind")
 
 @dataclass(frozen=True)
 class PluginFile(Generic[Kind]):
-    """What was loaded: the object, the file it came from and the source text of that file."""
+    """What was loaded: the object, the file it came from, and the source text of that file and of the helpers beside it."""
 
     object: Kind
     path: Path
     source: str
+
+
+_HELPERS = "__pulsewright_helpers__"  # where a plug-in's module keeps the source of the helpers it imported
 
 
 def is_plugin_reference(text: str) -> bool:
@@ -72,7 +76,7 @@ def _load_module(path: Path, file: str) -> tuple[ModuleType, str]:
     digest = hashlib.sha256(f"{path}\0{source}".encode("utf-8", "surrogatepass")).hexdigest()
     module_name = f"pulsewright_plugin_{digest[:16]}"
     if module_name in sys.modules:
-        return sys.modules[module_name], source
+        return sys.modules[module_name], source + getattr(sys.modules[module_name], _HELPERS, "")
     spec = spec_from_file_location(module_name, path)
     if spec is None:
         raise BadInputError(f"cannot read {file}: not a Python file")
@@ -80,15 +84,42 @@ def _load_module(path: Path, file: str) -> tuple[ModuleType, str]:
     linecache.checkcache(str(path))
     sys.modules[module_name] = module
     try:
-        # compiled here and not by the import system, whose cache of bytecode goes by file times and can be stale
-        exec(compile(source, str(path), "exec"), module.__dict__)
+        with _imports_from(path.parent) as helpers:
+            # compiled here and not by the import system, whose cache of bytecode goes by file times and can be stale
+            exec(compile(source, str(path), "exec"), module.__dict__)
+        module.__dict__[_HELPERS] = _sources_of(helpers)
     except KeyboardInterrupt:
         del sys.modules[module_name]
         raise
     except BaseException as error:
         del sys.modules[module_name]
         raise BadInputError(_in_user_code(error, path, file)) from error
-    return module, source
+    return module, source + getattr(module, _HELPERS)
+
+
+@contextmanager
+def _imports_from(folder: Path) -> Iterator[list[ModuleType]]:
+    """While a user's file runs, modules beside it can be imported; gives the list of those that were.
+
+    The folder stays on the path, behind everything else: helpers may import later, and must not hide installed packages.
+    """
+    if str(folder) not in sys.path:
+        sys.path.append(str(folder))
+    before, bytecode = set(sys.modules), sys.dont_write_bytecode
+    found: list[ModuleType] = []
+    sys.dont_write_bytecode = True  # an edit within the same second must not meet old bytecode
+    importlib.invalidate_caches()
+    try:
+        yield found
+    finally:
+        sys.dont_write_bytecode = bytecode
+        new = [module for name, module in sorted(sys.modules.items()) if name not in before]
+        found += [m for m in new if getattr(m, "__file__", None) and Path(str(m.__file__)).is_relative_to(folder)]
+
+
+def _sources_of(modules: Sequence[ModuleType]) -> str:
+    """The source text of the user's helper modules, for the digest of an experiment."""
+    return "".join(f"\0{m.__name__}\0{Path(str(m.__file__)).read_text(encoding='utf-8')}" for m in modules)
 
 
 def _in_user_code(error: BaseException, path: Path, file: str) -> str:

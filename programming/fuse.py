@@ -116,15 +116,19 @@ def fill_slots(function: Callable[..., Any], fillings: dict[str, Any], options: 
     are compiled with the loop's options.
     """
     copies: dict[FunctionType, Any] = {}
+    begun: set[FunctionType] = set()
 
     def copy(original: FunctionType, options: dict[str, Any]) -> Any:
         if original not in copies:
+            begun.add(original)
             names = dict(original.__globals__)
             for name in original.__code__.co_names:
                 value = names.get(name)
                 if isinstance(value, Slot):
                     value = fillings[value.name]
-                if isinstance(value, Dispatcher) and value.py_func.__closure__ is None:
+                if isinstance(value, Dispatcher) and value.py_func in begun - copies.keys():
+                    names[name] = value  # a helper that calls itself goes on as it was compiled
+                elif isinstance(value, Dispatcher) and value.py_func.__closure__ is None:
                     names[name] = copy(value.py_func, _HELPER_OPTIONS)
                 elif isinstance(value, FunctionType) and value.__module__.split(".")[0] == "programming":
                     names[name] = copy(value, _LOOP_OPTIONS)

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import hashlib
 import json
+import sys
 from pathlib import Path
 
 import pytest
@@ -72,6 +73,28 @@ def test_a_changed_line_changes_digest_and_cell(tmp_path: Path) -> None:
     assert first.digest != second.digest
     assert second.document["device"]["range_S"] == [1e-6, 101e-6]
     assert first.document["device"]["range_S"] == [1e-6, 100e-6]
+
+
+def test_a_helper_beside_the_file_is_found_and_counts(tmp_path: Path) -> None:
+    name = f"helper_{tmp_path.name}"  # modules are kept by name for as long as the process lives
+    source = CELL.replace("from typing", f"from {name} import highest\nfrom typing").replace("1e-6, 100e-6", "1e-6, highest")
+    digests = set()
+    for highest in ("100e-6", "101e-6"):
+        (tmp_path / f"{name}.py").write_text(f"highest = {highest}\n")
+        scenario = load_own(tmp_path, source)
+        digests.add(scenario.digest)
+        assert scenario.document["device"]["range_S"] == [1e-6, float(highest)]
+        for module in [name, *(m for m in sys.modules if m.startswith("pulsewright_plugin_"))]:
+            del sys.modules[module]  # what a fresh process begins without
+    assert len(digests) == 2
+    assert not list(tmp_path.glob("__pycache__"))
+
+
+def test_a_helper_that_calls_itself(tmp_path: Path) -> None:
+    helper = "@compiled\ndef halved(x, n):\n    if n == 0:\n        return x\n    return halved(0.5 * x, n - 1)\n\n"
+    source = CELL.replace("@compiled\ndef rate", f"{helper}@compiled\ndef rate").replace("p.speed *", "halved(p.speed, 3) *")
+    job = load_own(tmp_path, source).job
+    assert fuse(job.cell.model, job.strategy)
 
 
 def test_a_strategy_of_ones_own(tmp_path: Path) -> None:

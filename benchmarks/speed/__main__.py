@@ -23,7 +23,7 @@ def pulse_table(sizes: list[int], console: Console) -> dict[tuple[str, str, int]
                 for size in sizes:
                     costs[cell, scheme, size] = pulse_cost(speed_job(cell, size, scheme), 7 if size < 512 else 2)
                     progress.advance(task)
-    table = Table(title="One pulse with its verify, one thread [ns] (in brackets: with making and scoring the die)")
+    table = Table(title="One pulse with its verify, one thread, in ns (in brackets: with making and scoring the die)")
     for heading in ("cell", "scheme", *(f"{n} x {n}" for n in sizes), "largest / smallest", "disturbed by", "both polarities"):
         table.add_column(heading, justify="left" if heading in ("cell", "scheme") else "right")
     for cell in CELLS:
@@ -53,7 +53,7 @@ def ratio_table(costs: dict[tuple[str, str, int], PulseCost], console: Console) 
         table.add_row(f"eager NumPy loop, 512 x 512, {scheme}", f"{theirs:.0f} ns", f"{ours:.0f} ns", f"{theirs / ours:.0f} x")
     for name, kernel, cell in (
         ("arithmetic floor, demo cell", arithmetic_floor.threshold_cell, "mild stress"),
-        ("arithmetic floor, exponential cell (selected cell only)", arithmetic_floor.sinh_cell, "exponential"),
+        ("arithmetic floor, exponential cell, settling included", arithmetic_floor.sinh_cell, "exponential"),
     ):
         least, ours = arithmetic_floor.nanoseconds(kernel), costs[cell, "V/2", 64].pulse
         table.add_row(name, f"{least:.0f} ns", f"{ours:.0f} ns", f"{ours / least:.2f} x")
