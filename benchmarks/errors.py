@@ -42,3 +42,16 @@ def one_line(text: str) -> str:
 
 def _escaped(character: str) -> str:
     return character.encode("unicode_escape", "backslashreplace").decode("ascii")
+
+
+def came_of_interrupt(error: BaseException) -> bool:
+    """Whether an error arose while an interrupt was on its way out.
+
+    An interrupt that arrives while a lock is being taken makes the lock's own clean-up fail, and hides behind that.
+    """
+    seen: BaseException | None = error
+    while seen is not None:
+        if isinstance(seen, KeyboardInterrupt):
+            return True
+        seen = seen.__cause__ or seen.__context__
+    return False

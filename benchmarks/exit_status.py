@@ -13,8 +13,9 @@ from types import FrameType
 
 import click
 
-from benchmarks.errors import BadInputError, one_line
+from benchmarks.errors import BadInputError, came_of_interrupt, one_line
 
+_INTERRUPT_TEXT = "interrupted; nothing was left half-written"
 DONE, GATE_FAILED, BAD_INPUT, OWN_FAULT, INTERRUPTED = 0, 1, 2, 3, 130
 
 # What the user's machine refuses, as opposed to what we got wrong.
@@ -41,7 +42,7 @@ def run_guarded(command: Callable[[], None], arguments: Sequence[str]) -> int:
     except BadInputError as error:
         return _ended(BAD_INPUT, str(error))
     except (KeyboardInterrupt, click.Abort):
-        return _ended(INTERRUPTED, "interrupted; nothing was left half-written")
+        return _ended(INTERRUPTED, _INTERRUPT_TEXT)
     except BrokenPipeError:
         _discard_output()  # who read our output has gone: no message, there may be nobody to read it either
         return INTERRUPTED
@@ -53,6 +54,8 @@ def run_guarded(command: Callable[[], None], arguments: Sequence[str]) -> int:
         where = error.filename if error.filename is not None else "the output"
         return _ended(BAD_INPUT, f"{os.fsdecode(where)}: {error.strerror}")
     except Exception as error:  # the last resort is the point of it
+        if came_of_interrupt(error):
+            return _ended(INTERRUPTED, _INTERRUPT_TEXT)
         return _own_fault(error, arguments)
 
 

@@ -8,6 +8,7 @@ import os
 import signal
 import subprocess
 import sys
+import threading
 import time
 from collections.abc import Iterator
 from pathlib import Path
@@ -212,6 +213,19 @@ def test_a_full_standard_output_and_a_closed_pipe() -> None:
     assert process.wait(timeout=60) == 130
     assert process.stderr.read() == b""
     process.stderr.close()
+
+
+def test_an_interrupt_that_breaks_a_lock_is_still_an_interrupt(capsys: pytest.CaptureFixture[str]) -> None:
+    """What happens when the signal arrives while a lock is taken: the lock's clean-up fails over it."""
+
+    def command() -> None:
+        try:
+            raise KeyboardInterrupt
+        finally:
+            threading.Lock().release()
+
+    assert run_guarded(command, ["program"]) == 130
+    assert capsys.readouterr().err == "pulsewright: interrupted; nothing was left half-written\n"
 
 
 def test_a_fault_of_our_own_is_3_and_keeps_the_finished_dies(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:

@@ -67,6 +67,7 @@ def _run(loaded: Scenario, workers: int, out: Path | None, show_progress: bool) 
 
 
 def _all_dies(loaded: Scenario, workers: int, writer: ReportWriter | None, show_progress: bool) -> dict[str, Any]:
+    from benchmarks.errors import came_of_interrupt
     from benchmarks.fault_report import keep_result
     from benchmarks.progress import progress_bar
     from benchmarks.result import result_object
@@ -88,7 +89,7 @@ def _all_dies(loaded: Scenario, workers: int, writer: ReportWriter | None, show_
         if writer is not None:
             writer.finish(result, tally)
     except Exception as error:
-        if tally.dies and not isinstance(error, OSError):
+        if tally.dies and not isinstance(error, OSError) and not came_of_interrupt(error):
             keep_result(result_object(tally, loaded), loaded.dies, error)
         raise
     return result
