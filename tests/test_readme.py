@@ -4,6 +4,8 @@ import re
 from pathlib import Path
 
 from benchmarks.scenario import load_scenario
+from benchmarks.scenario_keys import Section
+from benchmarks.scenario_schema import ScenarioFile, SchemeFractions
 
 ROOT = Path(__file__).parent.parent
 README = (ROOT / "README.md").read_text(encoding="utf-8")
@@ -34,3 +36,33 @@ def test_files_named_in_the_guides_exist():
         for name in re.findall(r"`((?:[\w.]+/)+[\w.]*)`", text):
             if not name.startswith(("demo-result", "tables", "figures")) and name not in ("outside/", "twins/"):
                 assert (ROOT / name).exists() or name.endswith(("my_cell.py", "author_year.py")), f"{guide}: {name}"
+
+
+def documented_keys() -> dict[str, set[str]]:
+    """Section -> keys of docs/scenario.md; "" for the top level."""
+    sections: dict[str, set[str]] = {}
+    keys: set[str] = set()
+    for line in (ROOT / "docs" / "scenario.md").read_text(encoding="utf-8").splitlines():
+        if line.startswith("## "):
+            keys = set()
+            for name in re.findall(r"\[([\w.]+)\]", line) or [""]:
+                sections[name] = keys
+        elif line.startswith("| `"):
+            keys.update(re.findall(r"`(\w+)`", line.split("|")[1]))
+    return sections
+
+
+def schema_keys(section: type[Section] = ScenarioFile, name: str = "") -> dict[str, set[str]]:
+    """The same from the schema: subsections are keys whose type is a Section that has a heading of its own."""
+    keys: dict[str, set[str]] = {name: set()}
+    for key, field in section.model_fields.items():
+        own_heading = isinstance(field.annotation, type) and issubclass(field.annotation, Section)
+        if own_heading and field.annotation is not SchemeFractions:
+            keys |= schema_keys(field.annotation, f"{name}.{key}".strip("."))
+        else:
+            keys[name].add(key)
+    return keys
+
+
+def test_every_key_is_documented_and_every_documented_key_exists():
+    assert documented_keys() == schema_keys()
