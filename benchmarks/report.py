@@ -1,7 +1,8 @@
 """The folder that a run leaves behind: result.json, cells.csv, tables/ and figures/, all of it or nothing.
 
 Everything is written into a hidden folder on the same file system and moved into place, file by file, when the `with`
-block ends well. Whatever ends it otherwise (an error, a full disk, Ctrl-C) leaves the place as it was.
+block ends well. Whatever ends it otherwise (an error, a full disk, Ctrl-C) leaves the place as it was; what a killed run
+could not remove, the next one to the same place does.
 """
 
 from __future__ import annotations
@@ -16,9 +17,15 @@ from pathlib import Path
 from types import TracebackType
 from typing import Any, BinaryIO
 
+from filelock import FileLock, Timeout
+
 from benchmarks.cells_csv import HEADER
 from benchmarks.result import json_text
 from benchmarks.tally import Tally
+
+_HIDDEN, _UNLOCKED = ".pulsewright-", ".pulsewright-new-"
+_LOCK = "in-use"
+_REPLACED = "replaced-"  # files of the user's that are moved aside while a report takes their place
 
 
 class ReportWriter:
@@ -42,14 +49,15 @@ class ReportWriter:
         place = self._directory
         while not place.exists() and place != place.parent:
             place = place.parent
-        self._hidden = Path(tempfile.mkdtemp(prefix=".pulsewright-", dir=place))
+        _sweep(place)
+        self._hidden, self._in_use = _hidden_folder(place)
         self._written = self._hidden / "report"
         try:
             self._written.mkdir()
             self._cells: BinaryIO = (self._written / "cells.csv").open("wb")
             self._cells.write(HEADER)
         except BaseException:
-            shutil.rmtree(self._hidden, ignore_errors=True)
+            self._remove_hidden()
             raise
         return self
 
@@ -78,7 +86,33 @@ class ReportWriter:
             if kind is None and self._finished:
                 _publish(self._written, self._directory, self._hidden)
         finally:
-            shutil.rmtree(self._hidden, ignore_errors=True)
+            self._remove_hidden()
+
+    def _remove_hidden(self) -> None:
+        self._in_use.release()
+        shutil.rmtree(self._hidden, ignore_errors=True)
+
+
+def _hidden_folder(place: Path) -> tuple[Path, FileLock]:
+    """A new hidden folder in `place`, and the lock that says it is in use; it bears its name only once it is locked."""
+    unlocked = Path(tempfile.mkdtemp(prefix=_UNLOCKED, dir=place))
+    lock = FileLock(unlocked / _LOCK)
+    try:
+        lock.acquire(timeout=0)
+        return unlocked.rename(unlocked.with_name(unlocked.name.replace(_UNLOCKED, _HIDDEN))), lock
+    except BaseException:
+        lock.release()
+        shutil.rmtree(unlocked, ignore_errors=True)
+        raise
+
+
+def _sweep(place: Path) -> None:
+    """Remove what killed runs left in `place`: hidden folders that nobody holds, unless files of the user were put there."""
+    for folder in place.glob(f"{_HIDDEN}*"):
+        if folder.name.startswith(_UNLOCKED) or any(folder.glob(f"{_REPLACED}*")):
+            continue
+        with suppress(Timeout, OSError), FileLock(folder / _LOCK, timeout=0):
+            shutil.rmtree(folder, ignore_errors=True)
 
 
 def _publish(source: Path, directory: Path, aside: Path) -> None:
@@ -95,7 +129,7 @@ def _publish(source: Path, directory: Path, aside: Path) -> None:
             if place.is_dir():
                 raise IsADirectoryError(21, "Is a directory", str(place))
             if place.exists():
-                kept = aside / f"replaced-{len(undo)}"
+                kept = aside / f"{_REPLACED}{len(undo)}"
                 os.replace(place, kept)
                 undo.append(partial(os.replace, kept, place))
             os.replace(path, place)

@@ -319,3 +319,25 @@ def test_allow_code_is_needed_from_outside_too(tmp_path: Path) -> None:
     assert (result.returncode, result.stdout) == (2, "")
     assert "[programming] strategy" in result.stderr
     assert "--allow-code" in result.stderr
+
+
+def test_what_a_killed_run_left_the_next_one_removes(tmp_path: Path) -> None:
+    path = write_scenario(tmp_path)
+    arguments = command("program", path, "--dies", "1000000", "--out", tmp_path / "out", "--workers", "1")
+    killed = subprocess.Popen(arguments, stdout=subprocess.PIPE, stderr=subprocess.PIPE, env=environment(), cwd=tmp_path)
+    going = subprocess.Popen(arguments, stdout=subprocess.PIPE, stderr=subprocess.PIPE, env=environment(), cwd=tmp_path)
+    try:
+        _wait_for_dies(tmp_path, killed)
+        deadline = time.monotonic() + 60
+        while len(list(tmp_path.glob(".pulsewright-*/report"))) < 2 and time.monotonic() < deadline:
+            time.sleep(0.02)
+        killed.kill()
+        killed.communicate(timeout=60)
+        assert len(list(tmp_path.glob(".pulsewright-*"))) == 2
+        assert run("program", path, "--dies", "2", "--out", tmp_path / "out").exit_code == 0
+        assert len(list(tmp_path.glob(".pulsewright-*"))) == 1  # that of the run that still goes on
+    finally:
+        killed.kill()
+        going.send_signal(signal.SIGINT)
+        going.communicate(timeout=60)
+    assert not list(tmp_path.glob(".pulsewright-*"))
