@@ -43,11 +43,18 @@ def place_faults(
         _place_clusters(seed, die, rows, columns, stuck_low, stuck_high, cluster_size, fault)
         return
     for cell in range(rows * columns):
-        draw = uniform(seed, die, cell, FAULTS, 0, 0)
-        if draw < stuck_low:
-            fault[cell] = STUCK_LOW
-        elif draw < stuck_low + stuck_high:
-            fault[cell] = STUCK_HIGH
+        fault[cell] = uniform_fault(seed, die, cell, stuck_low, stuck_high)
+
+
+@compiled
+def uniform_fault(seed, die, cell, stuck_low, stuck_high):  # type: ignore[no-untyped-def]
+    """HEALTHY, STUCK_LOW or STUCK_HIGH for one cell by itself."""
+    if stuck_low + stuck_high <= 0.0:
+        return HEALTHY
+    draw = uniform(seed, die, cell, FAULTS, 0, 0)
+    if draw < stuck_low:
+        return STUCK_LOW
+    return STUCK_HIGH if draw < stuck_low + stuck_high else HEALTHY
 
 
 @compiled

@@ -17,8 +17,8 @@ import numpy as np
 
 from device_models.compiled import compiled
 
-# Purposes keep streams apart. 8 bits.
-DEVICE_SPREAD, INITIAL, FAULTS, TARGETS, CYCLE, READ, STRESS, ORDER, CONVERTER, CALIBRATION = range(10)
+# Purposes keep streams apart. 8 bits. As int64: for plain integers numba would compile everything once for each value.
+DEVICE_SPREAD, INITIAL, FAULTS, TARGETS, CYCLE, READ, STRESS, ORDER, CONVERTER, CALIBRATION = np.arange(10)
 
 _MULTIPLIER_0 = np.uint64(0xD2511F53)
 _MULTIPLIER_1 = np.uint64(0xCD9E8D57)

@@ -6,7 +6,7 @@ import math
 
 import numpy as np
 
-from device_models.faults import place_faults
+from device_models.faults import place_faults, uniform_fault
 from device_models.random_numbers import DEVICE_SPREAD, INITIAL, TARGETS, truncated_normal, uniform
 from programming.calibration import spread_factor
 from programming.energy import change_sums
@@ -16,8 +16,11 @@ from programming.slots import bounds, record, state_of
 from programming.visit import load_parameters, visit
 
 
-def draw_faults(plan, die, die_number):
-    """Which cells of the die are stuck, into die.fault. Apart from the rest: it allocates, which the loop may not."""
+def draw_clusters(plan, die, die_number):
+    """Which cells of the die are stuck, into die.fault, where faults are clustered.
+
+    Apart from the rest, and called before it: it allocates, which the loop may not, and few scenarios need it compiled.
+    """
     place_faults(
         plan.seed,
         die_number,
@@ -25,7 +28,7 @@ def draw_faults(plan, die, die_number):
         plan.columns,
         plan.stuck_low,
         plan.stuck_high,
-        plan.clustered != 0,
+        True,
         plan.cluster_size,
         die.fault,
     )
@@ -39,6 +42,8 @@ def draw_cell(plan, die, die_number, cell):
         factor = spread_factor(plan.spread_law[place], plan.spread_size[place], z)
         die.cells[cell, VARIED + place] = plan.base_values[which] * factor
     p = load_parameters(plan, die, cell)
+    if plan.clustered == 0:
+        die.fault[cell] = uniform_fault(plan.seed, die_number, cell, plan.stuck_low, plan.stuck_high)
     lowest, highest = bounds(p)
     if die.fault[cell] == 1:
         start = lowest
@@ -63,7 +68,7 @@ def draw_target(plan, die_number, cell):
 
 
 def make_die(plan, die, die_number):
-    """Draw the cells and targets of a fresh die; its memory is cleared and its faults are drawn already."""
+    """Draw the cells and targets of a fresh die; its memory is cleared, and clustered faults are drawn, already."""
     for cell in range(die.target.shape[0]):
         draw_cell(plan, die, die_number, cell)
         die.target[cell] = draw_target(plan, die_number, cell)

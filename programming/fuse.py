@@ -27,10 +27,12 @@ from programming.strategy_contract import CellStrategy
 class Fused(NamedTuple):
     """The compiled functions of one model and one strategy. Each is compiled, or loaded, at its first call.
 
-    program_die(plan, die, rules, die_number): see programming.die_loop. sample_cells: see programming.calibration.
+    program_die(plan, die, rules, die_number) and, before it where faults are clustered, draw_clusters(plan, die,
+    die_number): see programming.die_loop. sample_cells: see programming.calibration.
     """
 
     program_die: Callable[..., None]
+    draw_clusters: Callable[..., None]
     sample_cells: Callable[..., None]
 
 
@@ -38,8 +40,11 @@ _ENTRY = '''"""Generated: one model, one strategy and the programming loop, comp
 
 
 def program_die(plan, die, rules, die_number):
-    draw_faults(plan, die, die_number)
     loop(plan, die, rules, die_number)
+
+
+def draw_clusters(plan, die, die_number):
+    clusters(plan, die, die_number)
 
 
 def sample_cells(base_values, varied, law, size, truncation, voltages, widths, doses, read_voltage, ranges):
@@ -58,7 +63,7 @@ _HELPER_OPTIONS: dict[str, Any] = {
 }
 _LOOP_OPTIONS: dict[str, Any] = {**_HELPER_OPTIONS, "forceinline": True}
 _ENTRY_OPTIONS: dict[str, Any] = {"error_model": "numpy", "nogil": True}
-_draw_faults = njit(**_ENTRY_OPTIONS)(die_loop.draw_faults)
+_draw_clusters = njit(**_ENTRY_OPTIONS)(die_loop.draw_clusters)
 _fused: dict[str, Fused] = {}
 _lock = threading.Lock()
 
@@ -81,7 +86,7 @@ def _digest(fillings: dict[str, Any]) -> str:
     parts = {
         "loop": die_loop.program_die,
         "sample": calibration.sample_cells,
-        "draw_faults": _draw_faults,
+        "clusters": _draw_clusters,
         "composer": fill_slots.__code__,
     }
     options = (_ENTRY, tuple(sorted(_LOOP_OPTIONS.items())), tuple(sorted(_ENTRY_OPTIONS.items())))
@@ -109,13 +114,18 @@ def slot_fillings(model: DeviceModel, strategy: CellStrategy) -> dict[str, Any]:
     return fillings
 
 
-def fill_slots(function: Callable[..., Any], fillings: dict[str, Any], options: dict[str, Any] | None = None) -> Any:
+def fill_slots(
+    function: Callable[..., Any],
+    fillings: dict[str, Any],
+    options: dict[str, Any] | None = None,
+    copies: dict[FunctionType, Any] | None = None,
+) -> Any:
     """A compiled copy of a loop function and of all it calls, with the slots filled.
 
     Plain functions are parts of the loop, to be inlined. Compiled ones are helpers or a plug-in's: copied too, so that they
-    are compiled with the loop's options.
+    are compiled with the loop's options. copies: those made before with the same fillings, to be shared; added to.
     """
-    copies: dict[FunctionType, Any] = {}
+    copies = {} if copies is None else copies
     begun: set[FunctionType] = set()
 
     def copy(original: FunctionType, options: dict[str, Any]) -> Any:
@@ -164,10 +174,11 @@ def _simpson(fillings: dict[str, Any]) -> Any:
 def _compile(digest: str, fillings: dict[str, Any]) -> Fused:
     """Put the generated module in the cache folder and hand its functions to numba with its cache on."""
     # numba looks the module up by name when it loads the compiled code: it must be one that can be imported
+    copies: dict[FunctionType, Any] = {}
     names: dict[str, Any] = {
-        "loop": fill_slots(die_loop.program_die, fillings),
-        "sample": fill_slots(calibration.sample_cells, fillings, _ENTRY_OPTIONS),
-        "draw_faults": _draw_faults,
+        "loop": fill_slots(die_loop.program_die, fillings, copies=copies),
+        "sample": fill_slots(calibration.sample_cells, fillings, _ENTRY_OPTIONS, copies),
+        "clusters": _draw_clusters,
         "__name__": __name__,
     }
     exec(compile(_ENTRY, str(module_file(digest, _ENTRY)), "exec"), names)

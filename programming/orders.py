@@ -28,7 +28,7 @@ def column_by_column(rows: int, columns: int, seed: int, die: int) -> CellNumber
 
 def random(rows: int, columns: int, seed: int, die: int) -> CellNumbers:
     """A fresh shuffle for every die, the same for every strategy with that seed."""
-    generator = np.random.Generator(np.random.Philox(key=(seed << 64) | (die << 8) | ORDER))
+    generator = np.random.Generator(np.random.Philox(key=(seed << 64) | (die << 8) | int(ORDER)))
     return generator.permutation(rows * columns).astype(np.int32)
 
 

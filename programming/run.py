@@ -26,7 +26,7 @@ def program_dies(job: Job, dies: int, workers: int, reduce: Callable[[DieOutcome
     `reduce` runs in the worker, on arrays that are overwritten by the worker's next die: it must copy what it keeps. At
     most two dies per worker are in flight. An exception in `reduce`, KeyboardInterrupt included, stops all workers early.
     """
-    loop = fuse(job.cell.model, job.strategy).program_die
+    fused = fuse(job.cell.model, job.strategy)
     plan, rules = make_plan(job), make_rules(job)
     stop = np.zeros(1, dtype=np.uint8)
     own = threading.local()
@@ -39,7 +39,9 @@ def program_dies(job: Job, dies: int, workers: int, reduce: Callable[[DieOutcome
         if not same_order:
             own.die.order[:] = ORDERS[job.order](job.rows, job.columns, job.seed, die_number)
         clear_die(own.die, plan)
-        loop(plan, own.die, rules, die_number)
+        if plan.clustered:
+            fused.draw_clusters(plan, own.die, die_number)
+        fused.program_die(plan, own.die, rules, die_number)
         if stop[0] != 0:
             raise CancelledError  # half done, and nobody waits for it
         return reduce(_outcome(own.die, die_number))

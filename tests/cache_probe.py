@@ -8,7 +8,6 @@ import sys
 from pathlib import Path
 
 import numpy as np
-from numba import njit
 from numba.core.event import install_recorder
 
 from benchmarks.plugin_file import load_plugin
@@ -24,14 +23,9 @@ def tiny_loop(plan, die, rules, die_number):
     die[1] = decide(0.0, 0.0, 0.0, 0, die, rules)[1]
 
 
-def no_faults(plan, die, die_number):
-    """In place of the drawing of stuck cells."""
-
-
 def main(folder):
     sys.path.insert(0, str(folder))  # for the helper
     fuse.die_loop.program_die = tiny_loop
-    fuse._draw_faults = njit(no_faults)
     model = load_plugin("cell.py:MODEL", folder, DeviceModel, True).object
     strategy = load_plugin("plan.py:STRATEGY", folder, CellStrategy, True).object
     out = np.zeros(2)

@@ -30,6 +30,7 @@ def interpret(job: Job, planned_with: CellStrategy | None = None, die: int = 0) 
     plan = make_plan(planned)._replace(verifies=int(job.strategy.verifies))
     memory = make_die(job, plan, ORDERS[job.order](job.rows, job.columns, job.seed, die), np.zeros(1, dtype=np.uint8))
     clear_die(memory, plan)
-    die_loop.draw_faults(plan, memory, die)
+    if plan.clustered:
+        die_loop.draw_clusters(plan, memory, die)
     loop(plan, memory, make_rules(job), die)
     return _outcome(memory, die)
