@@ -15,7 +15,7 @@ import math
 
 import numpy as np
 
-from device_models.compiled import compiled
+from device_models.compiled import compiled, compiled_inline
 
 # Purposes keep streams apart. 8 bits. As int64: for plain integers numba would compile everything once for each value.
 DEVICE_SPREAD, INITIAL, FAULTS, TARGETS, CYCLE, READ, STRESS, ORDER, CONVERTER, CALIBRATION = np.arange(10)
@@ -46,7 +46,7 @@ def philox_block(counter_0, counter_1, counter_2, counter_3, key_0, key_1):
     return c0, c1, c2, c3
 
 
-@compiled
+@compiled_inline
 def keyed_words(seed, die, cell, purpose, event, draw):
     """Two 64-bit words for one draw: (seed; event, cell, die, purpose | sub-draw) -> uint64, uint64.
 
@@ -58,7 +58,7 @@ def keyed_words(seed, die, cell, purpose, event, draw):
     return (w1 << _SHIFT_32) | w0, (w3 << _SHIFT_32) | w2
 
 
-@compiled
+@compiled_inline
 def unit_interval(word):
     """A 64-bit word as a float strictly inside (0, 1): the top 53 bits, at the middle of their cell."""
     return (np.float64(np.int64(word >> np.uint64(12))) + 0.5) * 2.220446049250313e-16
@@ -89,7 +89,7 @@ _EDGES, _HEIGHTS, _RATIOS = _ziggurat_tables()
 _TAIL_START = float(_EDGES[1])
 
 
-@compiled
+@compiled_inline
 def _ziggurat(word):
     """The quick part: (accepted, value, strip) from one 64-bit word."""
     strip = np.int64(word & np.uint64(255))
@@ -119,7 +119,7 @@ def _ziggurat_rare(value, strip, seed, die, cell, purpose, event, draw):
                 return value
 
 
-@compiled
+@compiled_inline
 def normal_of_word(word, seed, die, cell, purpose, event, draw):
     """A standard normal from a word already drawn; the rest of the key serves the rare second look."""
     accepted, value, strip = _ziggurat(word)
@@ -128,7 +128,7 @@ def normal_of_word(word, seed, die, cell, purpose, event, draw):
     return _ziggurat_rare(value, strip, seed, die, cell, purpose, event, draw)
 
 
-@compiled
+@compiled_inline
 def normal(seed, die, cell, purpose, event, draw):
     """One standard normal by the ziggurat. Sub-draws closer than 64 apart never share a word."""
     word = keyed_words(seed, die, cell, purpose, event, draw)[0]

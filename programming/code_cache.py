@@ -50,7 +50,7 @@ def module_file(digest: str, source: str) -> Path:
 def has_machine_code(digest: str, function: str) -> bool:
     """Whether the cache holds compiled code for that function of the module of that digest."""
     path = module_path(digest)
-    return any((path.parent / "__pycache__").glob(f"{path.stem}.{function}-*.nbc"))
+    return any((path.parent / "__pycache__").glob(f"{path.stem}.{function}_*.nbc"))
 
 
 def compiled_with_cache(function: Callable[..., Any], options: dict[str, Any]) -> Any:

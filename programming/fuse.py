@@ -119,13 +119,16 @@ def fill_slots(
     fillings: dict[str, Any],
     options: dict[str, Any] | None = None,
     copies: dict[FunctionType, Any] | None = None,
+    tag: str = "",
 ) -> Any:
     """A compiled copy of a loop function and of all it calls, with the slots filled.
 
     Plain functions are parts of the loop, to be inlined. Compiled ones are helpers or a plug-in's: copied too, so that they
     are compiled with the loop's options. copies: those made before with the same fillings, to be shared; added to.
+    tag: what tells these copies from those for other fillings; by default made of the fillings.
     """
     copies = {} if copies is None else copies
+    tag = tag or _tag(fillings)
     begun: set[FunctionType] = set()
 
     def copy(original: FunctionType, options: dict[str, Any]) -> Any:
@@ -139,17 +142,32 @@ def fill_slots(
                 if isinstance(value, Dispatcher) and value.py_func in begun - copies.keys():
                     names[name] = value  # a helper that calls itself goes on as it was compiled
                 elif isinstance(value, Dispatcher) and value.py_func.__closure__ is None:
-                    names[name] = copy(value.py_func, _HELPER_OPTIONS)
+                    inline = value.targetoptions.get("forceinline", False)
+                    names[name] = copy(value.py_func, _LOOP_OPTIONS if inline else _HELPER_OPTIONS)
                 elif isinstance(value, FunctionType) and value.__module__.split(".")[0] == "programming":
                     names[name] = copy(value, _LOOP_OPTIONS)
                 elif name in names:
                     names[name] = value
             filled = FunctionType(original.__code__, names, original.__name__, original.__defaults__)
-            copies[original] = njit(**options)(filled)
+            copies[original] = njit(**options)(_named_for(filled, tag))
         return copies[original]
 
     assert isinstance(function, FunctionType)
     return copy(function, options or _LOOP_OPTIONS)
+
+
+def _named_for(function: FunctionType, tag: str) -> FunctionType:
+    """The function under a name of its own.
+
+    Machine code is linked by names, and numba's serial numbers begin anew in every process: two loops loaded from the cache
+    could otherwise find each other's parts.
+    """
+    function.__name__ = function.__qualname__ = f"{function.__name__}_{tag}"
+    return function
+
+
+def _tag(fillings: dict[str, Any]) -> str:
+    return code_digest({"composer": fill_slots.__code__, **{f"slot {k}": v for k, v in fillings.items()}})[:16]
 
 
 def _record_maker(record_type: type[Any]) -> Any:
@@ -157,7 +175,8 @@ def _record_maker(record_type: type[Any]) -> Any:
     fields = ", ".join(f"values[{i}]" for i in range(len(record_type._fields)))
     names: dict[str, Any] = {"Parameters": record_type, "__name__": __name__}
     exec(f"def record(values):\n    return Parameters({fields})\n", names)
-    return njit(error_model="numpy", nogil=True)(names["record"])
+    tag = code_digest({"record": record_type})[:16]
+    return njit(error_model="numpy", nogil=True)(_named_for(names["record"], tag))
 
 
 def _simpson(fillings: dict[str, Any]) -> Any:
@@ -168,7 +187,8 @@ def _simpson(fillings: dict[str, Any]) -> Any:
     def mean_conductance(before, after, dose, voltage, p):  # type: ignore[no-untyped-def]
         return rule(before, advance(before, 0.5 * dose, p), after, voltage, p)
 
-    return njit(error_model="numpy", nogil=True)(mean_conductance)
+    assert isinstance(mean_conductance, FunctionType)
+    return njit(error_model="numpy", nogil=True)(_named_for(mean_conductance, _tag(fillings)))
 
 
 def _compile(digest: str, fillings: dict[str, Any]) -> Fused:
@@ -176,10 +196,11 @@ def _compile(digest: str, fillings: dict[str, Any]) -> Fused:
     # numba looks the module up by name when it loads the compiled code: it must be one that can be imported
     copies: dict[FunctionType, Any] = {}
     names: dict[str, Any] = {
-        "loop": fill_slots(die_loop.program_die, fillings, copies=copies),
-        "sample": fill_slots(calibration.sample_cells, fillings, _ENTRY_OPTIONS, copies),
+        "loop": fill_slots(die_loop.program_die, fillings, copies=copies, tag=digest[:16]),
+        "sample": fill_slots(calibration.sample_cells, fillings, _ENTRY_OPTIONS, copies, digest[:16]),
         "clusters": _draw_clusters,
         "__name__": __name__,
     }
     exec(compile(_ENTRY, str(module_file(digest, _ENTRY)), "exec"), names)
-    return Fused(*(compiled_with_cache(names[name], _ENTRY_OPTIONS) for name in Fused._fields))
+    entries = (_named_for(names[name], digest[:16]) for name in Fused._fields)
+    return Fused(*(compiled_with_cache(entry, _ENTRY_OPTIONS) for entry in entries))
