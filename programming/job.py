@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass, field
-from typing import Any, Literal
+from typing import Literal
 
 import numpy as np
 import numpy.typing as npt
@@ -141,7 +141,6 @@ class Job:
     resolution: float
     stuck_false_alarm: float
     stress_noise: bool = True
-    settings: Mapping[str, Any] = field(default_factory=dict)
 
 
 STATUS_NAMES = ("not_addressed", "accepted", "gave_up", "stuck")

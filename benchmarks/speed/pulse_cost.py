@@ -11,6 +11,7 @@ from programming.die_memory import clear_die, make_die
 from programming.fuse import fuse
 from programming.job import Job, Targets
 from programming.orders import ORDERS
+from programming.plan import DISTURBANCE_S
 from programming.prepare import make_plan, make_rules
 
 
@@ -34,7 +35,7 @@ def pulse_cost(job: Job, repeats: int = 5) -> PulseCost:
     """Best of several runs of one die."""
     best, die = _best_time(job, repeats)
     pulses = int(die.pulses.sum())
-    stressed = float(np.abs(die.cells[:, 3]).mean())
+    stressed = float(np.abs(die.cells[:, DISTURBANCE_S]).mean())
     nothing = Targets("matrix", job.targets.low_S, job.targets.high_S, matrix_S=np.full((job.rows, job.columns), np.nan))
     empty, _ = _best_time(replace(job, targets=nothing), repeats)
     return PulseCost(

@@ -5,7 +5,6 @@ from __future__ import annotations
 import subprocess
 import sys
 import time
-from dataclasses import replace
 
 import numpy as np
 
@@ -49,7 +48,7 @@ def process_time(arguments: list[str], repeats: int = 5) -> float:
 
 def bytes_per_cell(size: int) -> tuple[float, float]:
     """(all memory of a die in flight, the same without state and varied parameters) per cell of the demo [bytes]."""
-    job = replace(speed_job("mild stress", size, "V/2"))
+    job = speed_job("mild stress", size, "V/2")
     plan = make_plan(job)
     die = make_die(job, plan, ORDERS[job.order](size, size, 1, 0), np.zeros(1, np.uint8))
     whole = sum(array.nbytes for array in die) / (size * size)
